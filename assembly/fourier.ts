@@ -1,0 +1,1 @@
+// fourier kernels

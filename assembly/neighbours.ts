@@ -1,0 +1,1 @@
+// neighbours kernels

@@ -1,0 +1,4 @@
+export const log = Math.log;
+export const exp = Math.exp;
+export const sin = Math.sin;
+export const cos = Math.cos;
