@@ -35,7 +35,6 @@ export default defineConfig((options) =>
             node: 'src/node/index.ts',
           },
           format: ['esm', 'cjs'],
-          minify: 'terser' in options ? false : false,
           dts: true,
           outDir: 'dist',
         },

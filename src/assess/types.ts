@@ -4,7 +4,7 @@ import type { DivergenceCurve } from '../divergence/types.ts';
 import type { NullTestResult, Regime } from '../evidence/types.ts';
 import type { LeadTimeOptions, LeadTimeResult } from '../forecast/types.ts';
 import type { DimensionCurve, NoiseResult } from '../geometry/types.ts';
-import type { ReconstructOptions, Reconstruction } from '../reconstruct/types.ts';
+import type { Reconstruction, ReconstructOptions } from '../reconstruct/types.ts';
 import type { RecordingOptions, RecordSummary } from '../recording/types.ts';
 
 export const ASSESSMENT_SCHEMA = 'leadspan.assessment/1';
@@ -58,7 +58,11 @@ export interface Mechanism {
 
 export interface AssessmentData {
   /** Target channel, at most 2,000 points of it (evenly thinned), with times; null at gaps. */
-  readonly record: { readonly time: readonly number[]; readonly value: readonly (number | null)[]; readonly thinning: number };
+  readonly record: {
+    readonly time: readonly number[];
+    readonly value: readonly (number | null)[];
+    readonly thinning: number;
+  };
   /** x(t) against x(t + delay), at most 4,000 consecutive samples, in the target's unit. */
   readonly portrait: { readonly x: readonly number[]; readonly y: readonly number[]; readonly delay: number };
 }

@@ -73,7 +73,12 @@ export function finding<T extends number | number[]>(fields: Omit<Finding<T>, 'o
   return { ok: true, ...fields };
 }
 
-export function refusal(code: RefusalCode, why: string, remedy: string, parameters?: MessageParameters): Refusal {
+export function refusal(
+  code: RefusalCode,
+  why: string,
+  remedy: string,
+  parameters?: MessageParameters,
+): Refusal {
   return { ok: false, code, why, remedy, ...(parameters === undefined ? {} : { parameters }) };
 }
 

@@ -26,6 +26,8 @@ export interface Compute {
    * Parts may run at the same time.
    */
   part(stage: string, share: number): Compute;
+  /** Marks this part as complete in the progress reports. */
+  finish(): void;
   /** Throws `ABORTED` when the caller's signal has fired. Call between pieces of policy work. */
   throwIfAborted(): void;
   /** Lets timers and messages run (policy code that loops for more than 10 ms calls this). */

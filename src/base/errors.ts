@@ -74,7 +74,11 @@ export function toPlainError(error: unknown): PlainError {
 }
 
 export function fromPlainError(plain: PlainError): LeadspanError {
-  const error = new LeadspanError(plain.code, plain.message, plain.field === undefined ? {} : { field: plain.field });
+  const error = new LeadspanError(
+    plain.code,
+    plain.message,
+    plain.field === undefined ? {} : { field: plain.field },
+  );
   if (plain.stack !== undefined) error.stack = plain.stack;
   return error;
 }

@@ -30,7 +30,13 @@ export interface Progress {
 
 /** What one option takes. */
 export type OptionRule =
-  | { readonly kind: 'number'; readonly min: number; readonly max: number; readonly integer?: boolean; readonly above?: number }
+  | {
+      readonly kind: 'number';
+      readonly min: number;
+      readonly max: number;
+      readonly integer?: boolean;
+      readonly above?: number;
+    }
   | { readonly kind: 'choice'; readonly of: readonly string[] }
   | { readonly kind: 'boolean' }
   | { readonly kind: 'any'; readonly check?: (value: unknown) => string | undefined };
@@ -40,10 +46,16 @@ export type OptionRule =
  * values out of range with the range. `undefined` means the default.
  * @throws LeadspanError BAD_OPTION
  */
-export function checkOptions(options: unknown, rules: Readonly<Record<string, OptionRule>>, where: string): void {
+export function checkOptions(
+  options: unknown,
+  rules: Readonly<Record<string, OptionRule>>,
+  where: string,
+): void {
   if (options === undefined) return;
   if (typeof options !== 'object' || options === null || Array.isArray(options))
-    throw new LeadspanError('BAD_OPTION', `${where} takes an options object; got ${show(options)}.`, { field: where });
+    throw new LeadspanError('BAD_OPTION', `${where} takes an options object; got ${show(options)}.`, {
+      field: where,
+    });
   for (const [name, value] of Object.entries(options)) {
     const rule = Object.hasOwn(rules, name) ? rules[name] : undefined;
     if (rule === undefined) {
@@ -57,7 +69,11 @@ export function checkOptions(options: unknown, rules: Readonly<Record<string, Op
     if (value === undefined) continue;
     const wrong = mismatch(value, rule);
     if (wrong !== undefined)
-      throw new LeadspanError('BAD_OPTION', `Option ${name} of ${where} must be ${wrong}; got ${show(value)}.`, { field: name });
+      throw new LeadspanError(
+        'BAD_OPTION',
+        `Option ${name} of ${where} must be ${wrong}; got ${show(value)}.`,
+        { field: name },
+      );
   }
 }
 
@@ -67,10 +83,14 @@ function mismatch(value: unknown, rule: OptionRule): string | undefined {
       const takes = `${rule.integer ? 'a whole number' : 'a number'} ${rule.above !== undefined ? `above ${rule.above} and at most ${rule.max}` : `from ${rule.min} to ${rule.max}`}`;
       if (typeof value !== 'number' || !Number.isFinite(value)) return takes;
       if (rule.integer && !Number.isInteger(value)) return takes;
-      return value < rule.min || value > rule.max || (rule.above !== undefined && value <= rule.above) ? takes : undefined;
+      return value < rule.min || value > rule.max || (rule.above !== undefined && value <= rule.above)
+        ? takes
+        : undefined;
     }
     case 'choice':
-      return typeof value === 'string' && rule.of.includes(value) ? undefined : `one of ${rule.of.map((c) => `'${c}'`).join(', ')}`;
+      return typeof value === 'string' && rule.of.includes(value)
+        ? undefined
+        : `one of ${rule.of.map((c) => `'${c}'`).join(', ')}`;
     case 'boolean':
       return typeof value === 'boolean' ? undefined : 'true or false';
     case 'any':
@@ -95,7 +115,11 @@ function editDistance(a: string, b: string): number {
   for (let i = 1; i <= a.length; i++) {
     const row = [i];
     for (let j = 1; j <= b.length; j++)
-      row[j] = Math.min(previous[j]! + 1, row[j - 1]! + 1, previous[j - 1]! + (a[i - 1] === b[j - 1] ? 0 : 1));
+      row[j] = Math.min(
+        previous[j]! + 1,
+        row[j - 1]! + 1,
+        previous[j - 1]! + (a[i - 1] === b[j - 1] ? 0 : 1),
+      );
     previous = row;
   }
   return previous[b.length]!;

@@ -107,9 +107,13 @@ export class Heap {
     try {
       this.memory.grow(Math.ceil(missing / PAGE));
     } catch (cause) {
-      throw new LeadspanError('MEMORY_LIMIT', `The kernels need ${end} bytes of linear memory; the host gives no more.`, {
-        cause,
-      });
+      throw new LeadspanError(
+        'MEMORY_LIMIT',
+        `The kernels need ${end} bytes of linear memory; the host gives no more.`,
+        {
+          cause,
+        },
+      );
     }
   }
 }

@@ -2,15 +2,7 @@ import scalarBytes from '../../dist/wasm/leadspan-scalar.wasm';
 import simdBytes from '../../dist/wasm/leadspan-simd.wasm';
 import { badOption, LeadspanError } from '../base/errors.ts';
 import type { BackendName, Kernels } from '../base/kernels.ts';
-import { createFallback } from '../fallback/index.ts';
-import { createCorrelation } from './correlation.ts';
-import { createDelays } from './delays.ts';
-import { createDivergence } from './divergence.ts';
-import { createFits } from './fits.ts';
-import { createFlow } from './flow.ts';
-import { createFourier } from './fourier.ts';
-import { createNeighbours } from './neighbours.ts';
-import { validated } from './validate.ts';
+import { type BackendModule, createKernels } from './create.ts';
 import { instantiate } from './wasm.ts';
 
 export interface OpenOptions {
@@ -28,12 +20,6 @@ export interface OpenOptions {
 
 /** Bytes, URL, or a compiled `WebAssembly.Module` (typed as object, so that the types need no DOM library). */
 export type WasmSource = Uint8Array | ArrayBuffer | string | object;
-
-/** Which build runs, with its compiled module; plain data that can be sent to workers. */
-export interface BackendModule {
-  readonly backend: BackendName;
-  readonly module: WebAssembly.Module | null;
-}
 
 const CHOICES = ['auto', 'wasm', 'wasm-simd', 'wasm-scalar', 'js'] as const;
 
@@ -54,7 +40,9 @@ export async function loadBackend(options: OpenOptions = {}): Promise<BackendMod
   } catch (cause) {
     // A policy without 'wasm-unsafe-eval' refuses compilation: plain JavaScript gives the same bits.
     if (choice === 'auto' && options.wasm === undefined) return { backend: 'js', module: null };
-    throw new LeadspanError('KERNEL_FAILED', `The wasm kernels did not load: ${(cause as Error).message}`, { cause });
+    throw new LeadspanError('KERNEL_FAILED', `The wasm kernels did not load: ${(cause as Error).message}`, {
+      cause,
+    });
   }
 }
 
@@ -68,24 +56,6 @@ async function fromOutside(wasm: WasmSource): Promise<BackendModule> {
   } else module = await WebAssembly.compile(wasm as BufferSource);
   const context = instantiate(module);
   return { backend: context.call('hasSimd') === 1 ? 'wasm-simd' : 'wasm-scalar', module };
-}
-
-/** Kernels of a loaded backend. Synchronous: what a worker calls. */
-export function createKernels({ backend, module }: BackendModule): Kernels {
-  if (module === null) return validated(createFallback());
-  const context = instantiate(module);
-  return validated({
-    backend,
-    ...createDelays(context),
-    ...createNeighbours(context),
-    ...createCorrelation(context),
-    ...createDivergence(context),
-    ...createFits(context),
-    ...createFlow(context),
-    ...createFourier(context),
-    memory: () => ({ used: context.heap.used, peak: context.heap.peak }),
-    close: () => {},
-  });
 }
 
 /**
