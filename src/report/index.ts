@@ -4,7 +4,7 @@ import { dimensionFigure, divergenceFigure, portraitFigure } from '../figures/ge
 import { errorGrowthFigure, skillFigure } from '../figures/lead-time.ts';
 import { delayFigure, embeddingFigure, recordFigure } from '../figures/record.ts';
 import type { FigureSpec } from '../figures/theme.ts';
-import { html, Markup } from './html.ts';
+import { escapeHtml, html, Markup } from './html.ts';
 import { renderFigure } from './render-figure.ts';
 import {
   answerPlate,
@@ -43,7 +43,7 @@ export async function renderReport(assessment: Assessment): Promise<string> {
     const spec = FIGURES[name](assessment);
     figures[name] =
       spec &&
-      html`<figure>${silent(await renderFigure(spec))}<figcaption>${spec.description}</figcaption></figure>`;
+      html`<figure>${pictured(await renderFigure(spec), spec.description)}<figcaption>${spec.description}</figcaption></figure>`;
   }
   const page = html`<!doctype html>
 <html lang="en">
@@ -70,7 +70,7 @@ ${howObtained(assessment)}
   return page.text;
 }
 
-/** The caption under the figure already says what it shows, so the picture itself is skipped when read aloud. */
-function silent(svg: string): Markup {
-  return new Markup(svg.replace('<svg ', '<svg aria-hidden="true" focusable="false" '));
+/** One picture with one text alternative, instead of hundreds of marks read out one by one. */
+function pictured(svg: string, description: string): Markup {
+  return new Markup(svg.replace('<svg ', `<svg role="img" aria-label="${escapeHtml(description)}" `));
 }
