@@ -34,10 +34,8 @@ const files = (readdirSync(root, { recursive: true }) as string[]).filter(
 
 const imports = files.flatMap((file) => {
   const text = readFileSync(join(root, file), 'utf8');
-  return [...text.matchAll(/(?:from|import)\s*\(?'([^']+)'/g)].map(([, target]) => ({
-    file,
-    target: target!,
-  }));
+  const statements = /^(?:import|export)[^;]*? from '([^']+)'|\bimport\('([^']+)'\)/gm;
+  return [...text.matchAll(statements)].map(([, a, b]) => ({ file, target: (a ?? b)! }));
 });
 const folderOf = (path: string) => (path.includes('/') ? path.split('/')[0]! : '');
 const local = imports
