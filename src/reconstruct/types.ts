@@ -37,9 +37,17 @@ export interface ReconstructionCurves {
     readonly judged: readonly number[];
   };
   /** Cao's E1 and E2 by dimension (Cao 1997). */
-  readonly cao: { readonly dimension: readonly number[]; readonly e1: readonly number[]; readonly e2: readonly number[] };
+  readonly cao: {
+    readonly dimension: readonly number[];
+    readonly e1: readonly number[];
+    readonly e2: readonly number[];
+  };
   /** Candidates tried and their out-of-sample forecast error relative to the standard deviation. */
-  readonly candidates: readonly { readonly delay: number; readonly dimension: number; readonly error: number }[];
+  readonly candidates: readonly {
+    readonly delay: number;
+    readonly dimension: number;
+    readonly error: number;
+  }[];
   /** Space–time separation: median distance (in std) by time separation in samples (Provenzale et al. 1992). */
   readonly separation: { readonly lag: readonly number[]; readonly median: readonly number[] };
 }

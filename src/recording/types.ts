@@ -48,7 +48,11 @@ export interface RecordQuality {
   readonly distinctValues: number;
   /** Samples per dominant cycle (from the mean frequency of crossings of the median), null if none. */
   readonly samplesPerCycle: number | null;
-  /** Conditions under which later stages must refuse. */
+  /**
+   * What is wrong with the record. Entries whose code is a `RefusalCode` (CONSTANT, TOO_SHORT, STUCK, SATURATED,
+   * NOISE_FLOOR) block the analysis (`blockingProblem`); the others (CLIPPED_BRIEFLY, STUCK_BRIEFLY, OVERSAMPLED,
+   * CHANNEL_CONSTANT) are remarks.
+   */
   readonly problems: readonly Caution[];
 }
 

@@ -1,0 +1,1 @@
+export { delayVectors, type VectorShape } from '../recording/vectors.ts';

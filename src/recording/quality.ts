@@ -1,0 +1,269 @@
+import { type Caution, REFUSAL_CODES, type Refusal, type RefusalCode, refusal } from '../base/answer.ts';
+import type { PreparedRecord, RecordQuality, Segment } from './types.ts';
+
+/** Is the record good enough? Every threshold says what would go wrong beyond it. */
+
+/**
+ * Cross-validation and the comparison of parts work on 5 stretches; 40 points in each give an error whose
+ * own standard error is 11 % (1/√(2·40)). Fewer cannot tell one state space from another.
+ */
+export const FEWEST_SAMPLES = 200;
+/** 5 stretches of 2 cycles: with less, a stretch does not show what the record repeats. */
+export const FEWEST_CYCLES = 10;
+/**
+ * Share of samples the sensor did not measure (clipped, stuck) beyond which results would be false: with 5
+ * coordinates, 1 % of samples spoils 5 % of the delay vectors, the level of the tests made on them.
+ */
+const MOST_FALSE_SAMPLES = 0.01;
+/** More samples per cycle than this only repeat each other. */
+const OVERSAMPLED = 200;
+/** Rounding to steps wider than the signal's standard deviation leaves about five levels: distances are then ties. */
+const WIDEST_STEP = 1;
+
+interface QualityInput {
+  /** The target, in units where nothing overflows (see `prepareRecording`); read where `present`. */
+  readonly values: Float64Array;
+  readonly present: Uint8Array;
+  readonly segments: readonly Segment[];
+  /** Present values, ascending. */
+  readonly sorted: Float64Array;
+  readonly std: number;
+  /** Step of the value lattice in the same units, 0 when none. */
+  readonly step: number;
+  readonly constant: boolean;
+  readonly flatChannels: readonly number[];
+}
+
+export function judgeQuality(input: QualityInput): RecordQuality {
+  const { sorted, constant } = input;
+  const distinctValues = countDistinct(sorted);
+  const runs = runLengths(input);
+  const cycles = constant ? null : dominantCycles(input);
+  const samplesPerCycle = cycles === null ? null : cycles.samples / cycles.count;
+  const clipping = constant ? NO_CLIPPING : findClipping(sorted, input.step, distinctValues);
+  const quality = {
+    saturatedFraction: sorted.length === 0 ? 0 : (extremes(sorted, 1) + extremes(sorted, -1)) / sorted.length,
+    longestRun: runs.longest,
+    distinctValues,
+    samplesPerCycle,
+  };
+  return { ...quality, problems: problemsOf(input, quality, runs, cycles, clipping) };
+}
+
+/**
+ * The first problem under which no state space should be rebuilt, as a refusal. Problems whose code is a
+ * refusal code block; the others are remarks.
+ */
+export function blockingProblem(record: PreparedRecord): Refusal | undefined {
+  const problem = record.quality.problems.find((p) => Object.hasOwn(REFUSAL_CODES, p.code));
+  if (problem === undefined) return undefined;
+  const code = problem.code as RefusalCode;
+  return refusal(code, problem.text, REMEDIES[code] ?? 'Record again.', problem.parameters);
+}
+
+const REMEDIES: Partial<Record<RefusalCode, string>> = {
+  TOO_SHORT: 'Record longer.',
+  CONSTANT: 'Check that the right channel was read and that the sensor is alive.',
+  STUCK: 'Mark the stuck stretch as missing (NaN), or assess the stretch before it.',
+  SATURATED: 'Widen the range of the acquisition and record again, or mark clipped samples as missing (NaN).',
+  NOISE_FLOOR: 'Record with a finer resolution or a higher gain.',
+};
+
+function problemsOf(
+  input: QualityInput,
+  quality: Omit<RecordQuality, 'problems'>,
+  runs: Runs,
+  cycles: Cycles | null,
+  clipping: Clipping,
+): Caution[] {
+  const problems: Caution[] = [];
+  const add = (code: string, text: string, parameters: Caution['parameters'] = {}) =>
+    problems.push({ code, text, parameters });
+  const n = input.sorted.length;
+  if (n < FEWEST_SAMPLES)
+    add(
+      'TOO_SHORT',
+      `The record has ${n} samples; at least ${FEWEST_SAMPLES} are needed to compare forecasts on parts of it.`,
+      {
+        count: n,
+        needed: FEWEST_SAMPLES,
+      },
+    );
+  if (input.constant && n > 0)
+    add('CONSTANT', 'The record does not vary beyond the rounding of its numbers.', { count: n });
+  if (input.flatChannels.length > 0)
+    add('CHANNEL_CONSTANT', `Channel ${input.flatChannels.join(', ')} does not vary and adds nothing.`, {
+      channels: input.flatChannels.join(', '),
+    });
+  if (input.constant || n === 0) return problems;
+
+  if (cycles !== null && cycles.count < FEWEST_CYCLES && n >= FEWEST_SAMPLES)
+    add(
+      'TOO_SHORT',
+      `The record crosses its middle only ${cycles.count} times upwards; at least ${FEWEST_CYCLES} cycles are needed to see what repeats.`,
+      { cycles: cycles.count, needed: FEWEST_CYCLES },
+    );
+  const stuckShare = runs.stuck / n;
+  if (runs.stuck > 0)
+    add(
+      stuckShare > MOST_FALSE_SAMPLES ? 'STUCK' : 'STUCK_BRIEFLY',
+      `The sensor repeats one value for ${runs.longest} samples on end, where its runs are usually at most ${runs.usual} samples; ${percent(stuckShare)} of the record is stuck.`,
+      { longest: runs.longest, usual: runs.usual, share: stuckShare },
+    );
+  if (clipping.share > 0)
+    add(
+      clipping.share > MOST_FALSE_SAMPLES ? 'SATURATED' : 'CLIPPED_BRIEFLY',
+      `${percent(clipping.share)} of the samples sit exactly at the ${clipping.ends} of the range, more than the values next to it and the resolution explain: the record is clipped.`,
+      { share: clipping.share, ends: clipping.ends },
+    );
+  if (input.step > WIDEST_STEP * input.std)
+    add(
+      'NOISE_FLOOR',
+      `The values come in steps of ${(input.step / input.std).toPrecision(3)} standard deviations (${quality.distinctValues} distinct values): rounding hides the small distances.`,
+      { steps: input.step / input.std, distinct: quality.distinctValues },
+    );
+  if (quality.samplesPerCycle !== null && quality.samplesPerCycle > OVERSAMPLED)
+    add(
+      'OVERSAMPLED',
+      `The record has ${Math.round(quality.samplesPerCycle)} samples per cycle: most repeat their neighbours, so it carries less than its length suggests.`,
+      { samplesPerCycle: quality.samplesPerCycle },
+    );
+  return problems;
+}
+
+const percent = (share: number) => `${Number((100 * share).toPrecision(2))} %`;
+
+function countDistinct(sorted: Float64Array): number {
+  let n = sorted.length > 0 ? 1 : 0;
+  for (let i = 1; i < sorted.length; i++) if (sorted[i] !== sorted[i - 1]) n++;
+  return n;
+}
+
+/** How many samples have exactly the largest (+1) or smallest (−1) value. */
+function extremes(sorted: Float64Array, side: 1 | -1): number {
+  const n = sorted.length;
+  let count = 1;
+  if (side > 0) while (count < n && sorted[n - 1 - count] === sorted[n - 1]) count++;
+  else while (count < n && sorted[count] === sorted[0]) count++;
+  return count;
+}
+
+interface Clipping {
+  /** Share of all samples that are clipped; 0 when none is. */
+  readonly share: number;
+  readonly ends: string;
+}
+
+const NO_CLIPPING: Clipping = { share: 0, ends: '' };
+
+/**
+ * A smooth extremum spends time ∝ √δ within δ of it, so a quantiser's outermost level, at most one step
+ * wide, holds at most as many samples as the next three together: √1 against √4 − √1. (Every distribution
+ * that falls off faster holds fewer.) An end with more is clipped. Continuous values do not repeat exactly
+ * at all, so there three equal extremes are clipping.
+ */
+function findClipping(sorted: Float64Array, step: number, distinctValues: number): Clipping {
+  const n = sorted.length;
+  // With so few levels the next three are the whole range: nothing can be told.
+  if (step > 0 && distinctValues < 8) return NO_CLIPPING;
+  let share = 0;
+  const ends: string[] = [];
+  for (const side of [1, -1] as const) {
+    const outermost = extremes(sorted, side);
+    if (outermost < 3) continue;
+    let next = 0;
+    if (step > 0) {
+      const end = side > 0 ? sorted[n - 1]! : sorted[0]!;
+      for (let i = outermost; i < n; i++) {
+        const v = side > 0 ? sorted[n - 1 - i]! : sorted[i]!;
+        if (Math.abs(v - end) > 3.5 * step) break;
+        next++;
+      }
+    }
+    // Three standard errors of a difference of counts, and a sample each for the ends of a run.
+    const margin = step > 0 ? 3 * Math.sqrt(outermost + next) + 2 : 0;
+    if (outermost <= next + margin) continue;
+    share += outermost / n;
+    ends.push(side > 0 ? 'top' : 'bottom');
+  }
+  return share > 0 ? { share, ends: ends.join(' and the ') } : NO_CLIPPING;
+}
+
+interface Runs {
+  readonly longest: number;
+  /** Median over 20 stretches of their longest run: what is usual. */
+  readonly usual: number;
+  /** Samples in runs that mean a stuck sensor. */
+  readonly stuck: number;
+}
+
+/** Shortest run called stuck, and how many times longer than usual it must be (flat tops differ by less). */
+const SHORTEST_STUCK = 20;
+const STUCK_RATIO = 10;
+const STRETCHES = 20;
+
+/**
+ * Equal successive values. Quantised slow signals have runs at every turning point, so a run is only
+ * called stuck when it is ten times longer than the usual longest one, or a quarter of the record.
+ */
+function runLengths({ values, segments, sorted }: QualityInput): Runs {
+  const n = sorted.length;
+  const longestOf = new Array<number>(STRETCHES).fill(0);
+  const long: number[] = [];
+  let longest = n > 0 ? 1 : 0;
+  const end = segments.length > 0 ? segments[segments.length - 1]!.end : 0;
+  for (const segment of segments) {
+    let from = segment.start;
+    for (let i = segment.start + 1; i <= segment.end; i++) {
+      if (i < segment.end && values[i] === values[i - 1]) continue;
+      const length = i - from;
+      if (length > longest) longest = length;
+      if (length >= SHORTEST_STUCK) long.push(length);
+      // A run belongs to every stretch it touches.
+      const last = Math.floor(((i - 1) * STRETCHES) / end);
+      for (let s = Math.floor((from * STRETCHES) / end); s <= last; s++)
+        if (length > longestOf[s]!) longestOf[s] = length;
+      from = i;
+    }
+  }
+  const usual = Math.max(1, longestOf.sort((a, b) => a - b)[STRETCHES >> 1]!);
+  let stuck = 0;
+  for (const length of long) if (length > STUCK_RATIO * usual || length > n / 4) stuck += length;
+  return { longest, usual, stuck };
+}
+
+interface Cycles {
+  /** Complete upward crossings of the middle. */
+  readonly count: number;
+  /** Samples between the first and the last of them, gaps left out. */
+  readonly samples: number;
+}
+
+/**
+ * Cycles by crossings of the median with a dead band of a quarter of the interquartile range to each side,
+ * so that noise near the middle is not counted (a Schmitt trigger). Null when nothing comes back.
+ */
+function dominantCycles({ values, segments, sorted }: QualityInput): Cycles | null {
+  const n = sorted.length;
+  const middle = sorted[n >> 1]!;
+  const band = 0.25 * (sorted[Math.floor(0.75 * (n - 1))]! - sorted[Math.floor(0.25 * (n - 1))]!);
+  let count = 0;
+  let samples = 0;
+  for (const { start, end } of segments) {
+    let low = false;
+    let first = -1;
+    let latest = -1;
+    for (let i = start; i < end; i++) {
+      const v = values[i]!;
+      if (v < middle - band) low = true;
+      else if (low && v > middle + band) {
+        low = false;
+        if (first < 0) first = i;
+        else count++;
+        latest = i;
+      }
+    }
+    if (first >= 0) samples += latest - first;
+  }
+  return count === 0 ? null : { count, samples };
+}
