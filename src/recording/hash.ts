@@ -29,7 +29,7 @@ export class Fnv64 {
       const to = Math.min(from + chunk, values.length);
       for (let i = from; i < to; i++) {
         const v = values[i]!;
-        view.setFloat64((i - from) * 8, v === v ? v + 0 : Number.NaN, true);
+        view.setFloat64((i - from) * 8, Number.isNaN(v) ? Number.NaN : v + 0, true);
       }
       this.bytes(new Uint8Array(view.buffer, 0, (to - from) * 8));
     }

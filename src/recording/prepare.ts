@@ -67,7 +67,7 @@ export function prepareRecording(input: Recording, options: RecordingOptions = {
   const found = (): number => {
     if (options.detrend !== 'linear' && options.resample !== 'linear') return latticeStep(sorted);
     const raw = toNormalRange(checked.channels[checked.target]!, undefined);
-    return (latticeStep(raw.values.filter((v) => v === v).sort()) * raw.unit) / unit;
+    return (latticeStep(raw.values.filter((v) => !Number.isNaN(v)).sort()) * raw.unit) / unit;
   };
   const step = constant ? 0 : checked.resolution !== undefined ? checked.resolution / unit : found();
 
@@ -104,7 +104,7 @@ function findSegments(channels: readonly Float64Array[]) {
   let missing = 0;
   let start = -1;
   for (let i = 0; i < count; i++) {
-    const here = channels.every((channel) => channel[i] === channel[i]);
+    const here = channels.every((channel) => !Number.isNaN(channel[i]));
     present[i] = here ? 1 : 0;
     if (here && start < 0) start = i;
     if (!here) {

@@ -38,8 +38,8 @@ export function judgeQuality(input: QualityInput): RecordQuality {
   const { sorted, constant } = input;
   const distinctValues = countDistinct(sorted);
   const runs = runLengths(input);
-  const cycles = constant ? null : dominantCycles(input);
-  const samplesPerCycle = cycles === null ? null : cycles.samples / cycles.count;
+  const cycles = constant ? { count: 0, samples: 0 } : dominantCycles(input);
+  const samplesPerCycle = cycles.count > 0 ? cycles.samples / cycles.count : null;
   const clipping = constant ? NO_CLIPPING : findClipping(sorted, input.step, distinctValues);
   const quality = {
     saturatedFraction: sorted.length === 0 ? 0 : (extremes(sorted, 1) + extremes(sorted, -1)) / sorted.length,
@@ -73,7 +73,7 @@ function problemsOf(
   input: QualityInput,
   quality: Omit<RecordQuality, 'problems'>,
   runs: Runs,
-  cycles: Cycles | null,
+  cycles: Cycles,
   clipping: Clipping,
 ): Caution[] {
   const problems: Caution[] = [];
@@ -97,7 +97,7 @@ function problemsOf(
     });
   if (input.constant || n === 0) return problems;
 
-  if (cycles !== null && cycles.count < FEWEST_CYCLES && n >= FEWEST_SAMPLES)
+  if (cycles.count < FEWEST_CYCLES && n >= FEWEST_SAMPLES)
     add(
       'TOO_SHORT',
       `The record crosses its middle only ${cycles.count} times upwards; at least ${FEWEST_CYCLES} cycles are needed to see what repeats.`,
@@ -239,31 +239,52 @@ interface Cycles {
   readonly samples: number;
 }
 
+/** The middle is that of each of 8 stretches: a slow trend must not hide the cycles on top of it. */
+const MIDDLES = 8;
+
 /**
- * Cycles by crossings of the median with a dead band of a quarter of the interquartile range to each side,
- * so that noise near the middle is not counted (a Schmitt trigger). Null when nothing comes back.
+ * Cycles by upward crossings of the local median with a dead band of a quarter of the interquartile range
+ * to each side, so that noise near the middle is not counted (a Schmitt trigger).
  */
-function dominantCycles({ values, segments, sorted }: QualityInput): Cycles | null {
-  const n = sorted.length;
-  const middle = sorted[n >> 1]!;
-  const band = 0.25 * (sorted[Math.floor(0.75 * (n - 1))]! - sorted[Math.floor(0.25 * (n - 1))]!);
-  let count = 0;
+function dominantCycles({ values, present, segments }: QualityInput): Cycles {
+  const count = values.length;
+  let cycles = 0;
   let samples = 0;
+  const thresholds = Array.from({ length: MIDDLES }, (_, s) =>
+    deadBand(values, present, Math.floor((s * count) / MIDDLES), Math.floor(((s + 1) * count) / MIDDLES)),
+  );
   for (const { start, end } of segments) {
     let low = false;
     let first = -1;
     let latest = -1;
     for (let i = start; i < end; i++) {
       const v = values[i]!;
-      if (v < middle - band) low = true;
-      else if (low && v > middle + band) {
+      const band = thresholds[Math.floor((i * MIDDLES) / count)]!;
+      if (v < band.low) low = true;
+      else if (low && v > band.high) {
         low = false;
         if (first < 0) first = i;
-        else count++;
+        else cycles++;
         latest = i;
       }
     }
     if (first >= 0) samples += latest - first;
   }
-  return count === 0 ? null : { count, samples };
+  return { count: cycles, samples };
+}
+
+function deadBand(values: Float64Array, present: Uint8Array, from: number, to: number) {
+  const sorted = values
+    .slice(from, to)
+    .filter((_, i) => present[from + i])
+    .sort();
+  const n = sorted.length;
+  if (n === 0) return { low: 0, high: 0 };
+  const quantile = (q: number) => sorted[Math.floor(q * (n - 1))]!;
+  const width = 0.25 * (quantile(0.75) - quantile(0.25));
+  if (width > 0) return { low: quantile(0.5) - width, high: quantile(0.5) + width };
+  // Spikes on a flat base have no interquartile range: a level between base and spikes does instead.
+  let mean = 0;
+  for (const v of sorted) mean += v / n;
+  return { low: mean, high: mean };
 }
