@@ -46,7 +46,11 @@ export interface LeadTimeResult {
   readonly origins: number;
   readonly curve: readonly LeadPoint[];
   /** Predicted lead time with sensors better or worse by whole decimal digits; empty when refused. */
-  readonly sensorTable: readonly { readonly noise: number; readonly trusted: number; readonly measured: boolean }[];
+  readonly sensorTable: readonly {
+    readonly noise: number;
+    readonly trusted: number;
+    readonly measured: boolean;
+  }[];
 }
 
 export interface ForecastOptions extends LeadTimeOptions {
