@@ -159,29 +159,29 @@ const NO_CLIPPING: Clipping = { share: 0, ends: '' };
 /**
  * A smooth extremum spends time ∝ √δ within δ of it, so a quantiser's outermost level, at most one step
  * wide, holds at most as many samples as the next three together: √1 against √4 − √1. (Every distribution
- * that falls off faster holds fewer.) An end with more is clipped. Continuous values do not repeat exactly
- * at all, so there three equal extremes are clipping.
+ * that falls off faster holds fewer.) An end with more is clipped. The next three values that occur are
+ * taken: continuous values hardly repeat at all, those of an exactly periodic record all repeat alike.
  */
 function findClipping(sorted: Float64Array, step: number, distinctValues: number): Clipping {
   const n = sorted.length;
   // With so few levels the next three are the whole range: nothing can be told.
-  if (step > 0 && distinctValues < 8) return NO_CLIPPING;
+  if (distinctValues < 8) return NO_CLIPPING;
+  // Repetitions of a computed value differ by rounding.
+  const rounding = 16 * 2 ** -52 * Math.max(Math.abs(sorted[0]!), Math.abs(sorted[n - 1]!));
+  const same = step > 0 ? Math.min(rounding, step / 2) : rounding;
   let share = 0;
   const ends: string[] = [];
   for (const side of [1, -1] as const) {
     const outermost = extremes(sorted, side);
     if (outermost < 3) continue;
+    const fromEnd = (i: number) => (side > 0 ? sorted[n - 1 - i]! : sorted[i]!);
     let next = 0;
-    if (step > 0) {
-      const end = side > 0 ? sorted[n - 1]! : sorted[0]!;
-      for (let i = outermost; i < n; i++) {
-        const v = side > 0 ? sorted[n - 1 - i]! : sorted[i]!;
-        if (Math.abs(v - end) > 3.5 * step) break;
-        next++;
-      }
+    for (let i = outermost, values = 1; i < n; i++) {
+      if (i > outermost && Math.abs(fromEnd(i) - fromEnd(i - 1)) > same && ++values > 3) break;
+      next++;
     }
-    // Three standard errors of a difference of counts, and a sample each for the ends of a run.
-    const margin = step > 0 ? 3 * Math.sqrt(outermost + next) + 2 : 0;
+    // A sample each for the ends of a run; on a lattice counts also scatter: three standard errors of a difference.
+    const margin = step > 0 ? 3 * Math.sqrt(outermost + next) + 2 : 2;
     if (outermost <= next + margin) continue;
     share += outermost / n;
     ends.push(side > 0 ? 'top' : 'bottom');
