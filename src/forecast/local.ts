@@ -1,5 +1,5 @@
 import type { Kernels } from '../base/kernels.ts';
-import { Paths, valueRange } from './path.ts';
+import { Paths, type ValueRange, valueRange } from './path.ts';
 import type { ForecastSetting, PredictorSpec } from './predictors.ts';
 
 export type LocalSpec = Extract<PredictorSpec, { kind: 'local' }>;
@@ -23,6 +23,7 @@ export function* predictLocal(
   const outputs = specs.map(() => new Float64Array(origins.length * leads.length));
   if (specs.length === 0 || origins.length === 0) return outputs;
   const vectors = { data: setting.data, starts: setting.library, offsets: setting.offsets };
+  const range = valueRange(setting);
   const index = kernels.neighbourIndex(vectors, 'euclidean');
   try {
     const rounds = Math.ceil(origins.length / SLICE);
@@ -31,7 +32,7 @@ export function* predictLocal(
       const at = round * SLICE * leads.length;
       for (let s = 0; s < specs.length; s++) {
         const work = specs[s]!.step === 0 ? direct : iterated;
-        const values = yield* work(kernels, index, setting, specs[s]!, batch, leads);
+        const values = yield* work(kernels, index, setting, range, specs[s]!, batch, leads);
         outputs[s]!.set(values, at);
         yield (round + (s + 1) / specs.length) / rounds;
       }
@@ -49,13 +50,14 @@ function* direct(
   kernels: Kernels,
   index: Index,
   setting: ForecastSetting,
+  range: ValueRange,
   spec: LocalSpec,
   origins: Int32Array,
   leads: Int32Array,
 ): Generator<number, Float64Array, void> {
   const queries = coordinatesOf(setting, origins);
   const base = setting.target * setting.count;
-  return fits(
+  const values = fits(
     kernels,
     index,
     setting,
@@ -64,6 +66,10 @@ function* direct(
     queries,
     leads.map((lead) => base + lead),
   );
+  // Held at the edge of the record's range, as iterated paths are.
+  const low = range.low[setting.target]!;
+  const high = range.high[setting.target]!;
+  return values.map((x) => Math.min(high, Math.max(low, x)));
 }
 
 /** `step` samples of every channel at a time, from the state forecast so far. */
@@ -71,6 +77,7 @@ function* iterated(
   kernels: Kernels,
   index: Index,
   setting: ForecastSetting,
+  range: ValueRange,
   spec: LocalSpec,
   origins: Int32Array,
   leads: Int32Array,
@@ -78,7 +85,7 @@ function* iterated(
   const { channels, count } = setting;
   const { step } = spec;
   const last = leads[leads.length - 1]!;
-  const paths = new Paths(setting, valueRange(setting), origins, last + step);
+  const paths = new Paths(setting, range, origins, last + step);
   const offsets = Int32Array.from(
     { length: channels * step },
     (_, i) => Math.floor(i / step) * count + (i % step) + 1,
