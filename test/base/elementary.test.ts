@@ -43,7 +43,7 @@ describe('elementary functions at known places', () => {
     expect(log(2)).toBe(0.6931471805599453);
     expect(ulps(log(5e-324), -744.4400719213812)).toBeLessThanOrEqual(1); // −1074 ln 2
     expect(exp(0)).toBe(1);
-    expect(exp(1)).toBe(2.718281828459045);
+    expect(ulps(exp(1), Math.E)).toBeLessThanOrEqual(1);
     expect(exp(710)).toBe(Number.POSITIVE_INFINITY);
     expect(exp(-746)).toBe(0);
     expect(exp(-745)).toBe(5e-324);
