@@ -82,7 +82,8 @@ export function leafDistances(
  */
 export function squaredLimit(radius: number): number {
   let limit = radius * radius;
-  if (limit === Number.POSITIVE_INFINITY) return limit;
+  // A squared distance that overflows is nowhere a neighbour.
+  if (limit === Number.POSITIVE_INFINITY) return Number.MAX_VALUE;
   while (Math.sqrt(limit) > radius) limit = neighbouringDouble(limit, -1n);
   for (;;) {
     const next = neighbouringDouble(limit, 1n);
