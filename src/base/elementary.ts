@@ -156,7 +156,7 @@ function reduce(x: number): { readonly n: number; readonly head: number; readonl
  * phases here are kept within a few turns.
  */
 export function sin(x: number): number {
-  if (x !== x || x - x !== 0) return Number.NaN;
+  if (!Number.isFinite(x)) return Number.NaN;
   if (Math.abs(x) <= 0.7853981633974483) return kernelSin(x, 0);
   const { n, head, tail } = reduceChecked(x);
   return n === 0
@@ -170,7 +170,7 @@ export function sin(x: number): number {
 
 /** Cosine; range as `sin`. */
 export function cos(x: number): number {
-  if (x !== x || x - x !== 0) return Number.NaN;
+  if (!Number.isFinite(x)) return Number.NaN;
   if (Math.abs(x) <= 0.7853981633974483) return kernelCos(x, 0);
   const { n, head, tail } = reduceChecked(x);
   return n === 0
