@@ -21,6 +21,7 @@ const SLICE = 512;
  * @param fill writes row `t` into the buffer
  * @param reach samples before and after `t` that a row uses: rows sharing a sample with an origin's window
  *   are left out of its fold
+ * @param regressors leading entries of w; the products of the others with each other stay 0
  */
 export function* foldSums(
   setting: ForecastSetting,
@@ -28,6 +29,7 @@ export function* foldSums(
   rows: Int32Array,
   fill: (t: number, w: Float64Array) => void,
   reach: number,
+  regressors = width,
 ): Generator<number, FoldSums, void> {
   const { foldEdges, exclusion } = setting;
   const folds = Math.max(1, foldEdges.length - 1);
@@ -51,7 +53,9 @@ export function* foldSums(
     for (let i = 0; i < width; i++) {
       const wi = w[i]!;
       const at = i * width;
-      for (let j = 0; j <= i; j++) sum[at + j]! += wi * w[j]!;
+      // Products of targets with each other are not needed.
+      const to = i < regressors ? i : regressors - 1;
+      for (let j = 0; j <= to; j++) sum[at + j]! += wi * w[j]!;
     }
     counts[piece]!++;
     if (r % SLICE === SLICE - 1) yield (0.5 * r) / rows.length;

@@ -11,8 +11,8 @@ import {
   prepareSetting,
   sparseLeads,
 } from './setting.ts';
-import { compareForecasts, rmsByLead, SATURATED } from './skill.ts';
-import { chooseStructure, lookAhead } from './structure.ts';
+import { compareForecasts, rmsByLead, saturationColumn } from './skill.ts';
+import { chooseStructure, lookAhead, TUNING_ORIGINS } from './structure.ts';
 
 /** Origins at most; fewer at long horizons, so that forecasts stay under MOST_FORECASTS. */
 const MOST_ORIGINS = 1_000;
@@ -77,13 +77,13 @@ export async function forecastHeldOut(
       : cap;
   let prepared = prepareSetting(record, reconstruction, steps);
   const ours = await chooseStructure(prepared, pilot, compute);
-  for (;;) {
+  // The chosen structure may reach farther than the pilot's: lengthen until its errors saturate too.
+  while (steps < cap && !(await reachesSaturation(prepared, ours, compute))) {
     compute.throwIfAborted();
-    const result = await atHorizon(prepared, reconstruction, ours, compute);
-    if (steps >= cap || saturated(result)) return result;
     steps = Math.min(cap, 2 * steps);
     prepared = prepareSetting(record, reconstruction, steps);
   }
+  return atHorizon(prepared, reconstruction, ours, compute);
 }
 
 async function atHorizon(
@@ -137,13 +137,17 @@ async function atHorizon(
 }
 
 /** Over the last quarter of the horizon the forecast is as wrong as the record's mean. */
-function saturated({ errors, climatology, steps }: HeldOut): boolean {
-  const ours = rmsByLead(errors, steps);
-  const mean = rmsByLead(climatology, steps);
-  let ratio = 0;
-  const from = Math.floor((3 * steps) / 4);
-  for (let l = from; l < steps; l++) ratio += ours[l]! / mean[l]!;
-  return ratio >= SATURATED * (steps - from);
+async function reachesSaturation(
+  prepared: PreparedSetting,
+  ours: PredictorSpec,
+  compute: Compute,
+): Promise<boolean> {
+  const steps = prepared.setting.reach;
+  const leads = everyLead(steps).filter((lead) => 4 * lead > 3 * steps);
+  const specs: PredictorSpec[] = [ours, { kind: 'climatology' }];
+  const origins = chooseOrigins(prepared.starts, TUNING_ORIGINS);
+  const [errors, mean] = await heldOutErrors(prepared.setting, specs, origins, leads, compute);
+  return saturationColumn(errors!, mean!, leads.length, leads.length) === 0;
 }
 
 /**

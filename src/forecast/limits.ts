@@ -12,6 +12,8 @@ import type { LeadTimeLimit, LeadTimeResult } from './types.ts';
 
 /** Origins of an experiment: the bound's order statistic is then the 25th smallest at 90 %. */
 const ORIGINS = 250;
+/** Origins on which its neighbourhoods are compared. */
+const TUNING = 64;
 /** Rows for worse sensors at most, a decimal digit each. */
 const WORSE_DIGITS = 2;
 const BETTER_DIGITS = 2;
@@ -110,24 +112,26 @@ export async function findLimits(
       measuredGain: null,
     };
 
+  // Worse conditions leave sooner: half as far again as today's bound is far enough.
+  const steps = Math.min(heldOut.steps, Math.ceil((1.5 * trusted.value) / record.interval) + 1);
   const stride = Math.max(1, Math.floor(heldOut.origins.length / ORIGINS));
   const origins = heldOut.origins.filter((_, i) => i % stride === 0);
   const boundOf = (errors: Float64Array) => {
-    const exits = firstExits(errors, heldOut.steps, input.tolerance);
+    const exits = firstExits(errors, steps, input.tolerance);
     const rank = Math.max(1, conformalRank(exits.length, heldOut.independent, input.confidence));
     return (orderStatistic(exits, rank) - 1) * record.interval;
   };
-  const baseline = boundOf(rowsAt(heldOut, stride));
+  const baseline = boundOf(rowsAt(heldOut, stride, steps));
 
   // Worse sensors by whole digits while noise alone does not fill the tolerance; else by half a digit.
   const levels = [1, 2].slice(0, WORSE_DIGITS).filter((d) => noise * 10 ** d <= 0.5 * input.tolerance * std);
   if (levels.length === 0 && noise * ROOT10 <= input.tolerance * std) levels.push(0.5);
   const experiment = async (changed: PreparedRecord, half: boolean) => {
-    const prepared = prepareSetting(changed, reconstruction, heldOut.steps);
+    const prepared = prepareSetting(changed, reconstruction, steps);
     const used = half ? { ...prepared, setting: withHalfLibrary(prepared.setting) } : prepared;
-    const specs = variantsOf(heldOut.spec, reconstruction.embeddingDimension);
-    const spec = specs.length > 1 ? await bestOf(used, specs, compute) : specs[0]!;
-    const [errors] = await heldOutErrors(used.setting, [spec], origins, everyLead(heldOut.steps), compute);
+    const specs = variantsOf(heldOut.spec, reconstruction.embeddingDimension, half ? 'shorter' : 'noisier');
+    const spec = specs.length > 1 ? await bestOf(used, specs, compute, TUNING) : specs[0]!;
+    const [errors] = await heldOutErrors(used.setting, [spec], origins, everyLead(steps), compute);
     return boundOf(errors!);
   };
   const [halved, ...worse] = await Promise.all([
@@ -238,11 +242,12 @@ function withHalfLibrary<S extends { readonly library: Int32Array; readonly coun
   return { ...setting, library: setting.library.filter((t) => Math.floor(t / stretch) % 2 === 0) };
 }
 
-/** Errors of every `stride`-th origin. */
-function rowsAt(heldOut: HeldOut, stride: number): Float64Array {
-  const { errors, steps, origins } = heldOut;
+/** Errors of every `stride`-th origin at the first `steps` leads. */
+function rowsAt(heldOut: HeldOut, stride: number, steps: number): Float64Array {
+  const { errors, origins } = heldOut;
   const rows: Float64Array[] = [];
-  for (let i = 0; i < origins.length; i += stride) rows.push(errors.subarray(i * steps, (i + 1) * steps));
+  for (let i = 0; i < origins.length; i += stride)
+    rows.push(errors.subarray(i * heldOut.steps, i * heldOut.steps + steps));
   const out = new Float64Array(rows.length * steps);
   rows.forEach((row, i) => {
     out.set(row, i * steps);

@@ -1,4 +1,4 @@
-import type { Kernels } from '../base/kernels.ts';
+import type { Kernels, NearestNeighbours, NeighbourIndex } from '../base/kernels.ts';
 import { Paths, type ValueRange, valueRange } from './path.ts';
 import type { ForecastSetting, PredictorSpec } from './predictors.ts';
 
@@ -30,9 +30,16 @@ export function* predictLocal(
     for (let round = 0; round < rounds; round++) {
       const batch = origins.subarray(round * SLICE, (round + 1) * SLICE);
       const at = round * SLICE * leads.length;
+      // Direct structures differ only in what they do with the neighbours: one search serves them all.
+      const queries = coordinatesOf(setting, batch);
+      const most = Math.max(0, ...specs.filter((s) => s.step === 0).map((s) => s.neighbours));
+      const nearest = most > 0 ? search(index, setting, batch, queries, most) : undefined;
       for (let s = 0; s < specs.length; s++) {
-        const work = specs[s]!.step === 0 ? direct : iterated;
-        const values = yield* work(kernels, index, setting, range, specs[s]!, batch, leads);
+        const spec = specs[s]!;
+        const values =
+          spec.step === 0
+            ? direct(kernels, setting, range, spec, queries, first(nearest!, spec.neighbours), leads)
+            : yield* iterated(kernels, index, setting, range, spec, batch, leads);
         outputs[s]!.set(values, at);
         yield (round + (s + 1) / specs.length) / rounds;
       }
@@ -43,27 +50,23 @@ export function* predictLocal(
   return outputs;
 }
 
-type Index = ReturnType<Kernels['neighbourIndex']>;
-
 /** Every lead is a target of its own: one search and one factorisation for all. */
-function* direct(
+function direct(
   kernels: Kernels,
-  index: Index,
   setting: ForecastSetting,
   range: ValueRange,
   spec: LocalSpec,
-  origins: Int32Array,
+  queries: Float64Array,
+  neighbours: NearestNeighbours,
   leads: Int32Array,
-): Generator<number, Float64Array, void> {
-  const queries = coordinatesOf(setting, origins);
+): Float64Array {
   const base = setting.target * setting.count;
-  const values = fits(
+  const values = mapFutures(
     kernels,
-    index,
     setting,
     spec,
-    origins,
     queries,
+    neighbours,
     leads.map((lead) => base + lead),
   );
   // Held at the edge of the record's range, as iterated paths are.
@@ -75,7 +78,7 @@ function* direct(
 /** `step` samples of every channel at a time, from the state forecast so far. */
 function* iterated(
   kernels: Kernels,
-  index: Index,
+  index: NeighbourIndex,
   setting: ForecastSetting,
   range: ValueRange,
   spec: LocalSpec,
@@ -91,7 +94,9 @@ function* iterated(
     (_, i) => Math.floor(i / step) * count + (i % step) + 1,
   );
   for (let lead = 0; lead < last; lead += step) {
-    const next = fits(kernels, index, setting, spec, origins, paths.coordinates(lead), offsets);
+    const queries = paths.coordinates(lead);
+    const neighbours = search(index, setting, origins, queries, spec.neighbours);
+    const next = mapFutures(kernels, setting, spec, queries, neighbours, offsets);
     for (let i = 0; i < origins.length; i++)
       for (let c = 0; c < channels; c++)
         for (let s = 0; s < step; s++)
@@ -101,21 +106,38 @@ function* iterated(
   return paths.targets(leads);
 }
 
-/** Neighbours of the queries, none of them near the origin in time, and the fit to their futures. */
-function fits(
+/** Neighbours of the queries, none of them near the origin in time. */
+function search(
+  index: NeighbourIndex,
+  setting: ForecastSetting,
+  origins: Int32Array,
+  queries: Float64Array,
+  k: number,
+): NearestNeighbours {
+  return index.nearestTo({ coordinates: queries, times: Int32Array.from(origins) }, k, setting.exclusion);
+}
+
+/** The first `k` of more neighbours. */
+function first(nearest: NearestNeighbours, k: number): NearestNeighbours {
+  if (nearest.k === k) return nearest;
+  const rows = nearest.indices.length / nearest.k;
+  const indices = new Int32Array(rows * k);
+  const distances = new Float64Array(rows * k);
+  for (let i = 0; i < rows; i++) {
+    indices.set(nearest.indices.subarray(i * nearest.k, i * nearest.k + k), i * k);
+    distances.set(nearest.distances.subarray(i * nearest.k, i * nearest.k + k), i * k);
+  }
+  return { k, indices, distances };
+}
+
+function mapFutures(
   kernels: Kernels,
-  index: Index,
   setting: ForecastSetting,
   spec: LocalSpec,
-  times: Int32Array,
   queries: Float64Array,
+  neighbours: NearestNeighbours,
   targetOffsets: Int32Array,
 ): Float64Array {
-  const neighbours = index.nearestTo(
-    { coordinates: queries, times: Int32Array.from(times) },
-    spec.neighbours,
-    setting.exclusion,
-  );
   const { predictions } = kernels.localFits({
     vectors: { data: setting.data, starts: setting.library, offsets: setting.offsets },
     targetOffsets,

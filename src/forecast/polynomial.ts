@@ -52,36 +52,26 @@ export function* predictPolynomial(
       }
     },
     0, // exclusion already keeps library vectors and their futures away from each origin
+    features,
   );
   const range = valueRange(setting);
   const last = leads[leads.length - 1]!;
-  for (let n = 0; n < specs.length; n++) {
-    const spec = specs[n]!;
-    for (let fold = 0; fold < sums.folds; fold++) {
-      const members: number[] = [];
-      for (let i = 0; i < origins.length; i++) if (sums.foldOf(origins[i]!) === fold) members.push(i);
-      if (members.length === 0) continue;
-      const map = fitMap(
-        sums,
-        fold,
-        spec,
-        monomialCount(offsets.length, spec.degree),
-        features,
-        channels,
-        most,
-      );
+  for (let fold = 0; fold < sums.folds; fold++) {
+    const members: number[] = [];
+    for (let i = 0; i < origins.length; i++) if (sums.foldOf(origins[i]!) === fold) members.push(i);
+    if (members.length === 0) continue;
+    const fits = new FoldFits(sums, fold, features, channels, most);
+    for (let n = 0; n < specs.length; n++) {
+      const spec = specs[n]!;
+      const map = fits.map(spec, monomialCount(offsets.length, spec.degree));
       for (let from = 0; from < members.length; from += BATCH) {
         const batch = members.slice(from, from + BATCH);
-        const paths = new Paths(
-          setting,
-          range,
-          Int32Array.from(batch, (i) => origins[i]!),
-          last + spec.step,
-        );
+        const times = Int32Array.from(batch, (i) => origins[i]!);
+        const paths = new Paths(setting, range, times, last + spec.step);
         for (let lead = 0; lead < last; lead += spec.step) {
           advance(paths, monomials, map, setting, spec.step, lead, batch.length);
           if ((lead / spec.step) % 16 === 15)
-            yield 0.5 + (0.5 * (n + (fold + lead / last) / sums.folds)) / specs.length;
+            yield 0.5 + (0.5 * (fold + (n + lead / last) / specs.length)) / sums.folds;
         }
         const values = paths.targets(leads);
         for (let b = 0; b < batch.length; b++)
@@ -90,6 +80,7 @@ export function* predictPolynomial(
             batch[b]! * leads.length,
           );
       }
+      yield 0.5 + (0.5 * (fold + (n + 1) / specs.length)) / sums.folds;
     }
   }
   return outputs;
@@ -127,40 +118,61 @@ function advance(
   }
 }
 
-/** Ridge solution on monomials scaled to unit mean square, so that one ridge suits all degrees. */
-function fitMap(
-  sums: FoldSums,
-  fold: number,
-  spec: PolynomialSpec,
-  used: number,
-  features: number,
-  channels: number,
-  most: number,
-): PolynomialMap {
-  const { products, rows } = sums.sums(fold);
-  const width = features + channels * most;
-  const coefficients = new Float64Array(channels * spec.step * used);
-  const map = { features: used, coefficients };
-  if (rows < 2 * used) return map; // no change: persistence
-  const scale = new Float64Array(used);
-  for (let f = 0; f < used; f++) scale[f] = Math.sqrt(products[f * width + f]!) || 1;
-  const normal = new Float64Array(used * used);
-  for (let i = 0; i < used; i++) {
-    for (let j = 0; j <= i; j++) normal[i * used + j] = products[i * width + j]! / (scale[i]! * scale[j]!);
-    normal[i * used + i]! += spec.ridge;
+/** Ridge solutions of one fold, on monomials scaled to unit mean square, so that one ridge suits all degrees. */
+class FoldFits {
+  readonly #products: Float64Array;
+  readonly #rows: number;
+  readonly #factors = new Map<string, { readonly factor: Float64Array; readonly rank: number }>();
+  readonly #features: number;
+  readonly #channels: number;
+  readonly #most: number;
+
+  constructor(sums: FoldSums, fold: number, features: number, channels: number, most: number) {
+    const { products, rows } = sums.sums(fold);
+    this.#products = products;
+    this.#rows = rows;
+    this.#features = features;
+    this.#channels = channels;
+    this.#most = most;
   }
-  const { factor, rank } = cholesky(normal, used, used, 0);
-  if (rank < used) return map;
-  for (let c = 0; c < channels; c++) {
-    for (let s = 0; s < spec.step; s++) {
-      const row = (features + c * most + s) * width;
-      const cross = new Float64Array(used);
-      for (let f = 0; f < used; f++) cross[f] = products[row + f]! / scale[f]!;
-      const x = backwardSolve(factor, used, used, forwardSolve(factor, used, used, cross));
-      for (let f = 0; f < used; f++) coefficients[(c * spec.step + s) * used + f] = x[f]! / scale[f]!;
+
+  /** The fit with the first `used` monomials; no change (persistence) where it is not determined. */
+  map(spec: PolynomialSpec, used: number): PolynomialMap {
+    const width = this.#features + this.#channels * this.#most;
+    const coefficients = new Float64Array(this.#channels * spec.step * used);
+    const map = { features: used, coefficients };
+    if (this.#rows < 2 * used) return map;
+    const scale = new Float64Array(used);
+    for (let f = 0; f < used; f++) scale[f] = Math.sqrt(this.#products[f * width + f]!) || 1;
+    const { factor, rank } = this.#factor(spec.ridge, used, width, scale);
+    if (rank < used) return map;
+    const cross = new Float64Array(used);
+    for (let c = 0; c < this.#channels; c++) {
+      for (let s = 0; s < spec.step; s++) {
+        const row = (this.#features + c * this.#most + s) * width;
+        for (let f = 0; f < used; f++) cross[f] = this.#products[row + f]! / scale[f]!;
+        const x = backwardSolve(factor, used, used, forwardSolve(factor, used, used, cross));
+        for (let f = 0; f < used; f++) coefficients[(c * spec.step + s) * used + f] = x[f]! / scale[f]!;
+      }
     }
+    return map;
   }
-  return map;
+
+  /** Specs that differ in their step share the factorisation. */
+  #factor(ridge: number, used: number, width: number, scale: Float64Array) {
+    const key = `${used}/${ridge}`;
+    const known = this.#factors.get(key);
+    if (known) return known;
+    const normal = new Float64Array(used * used);
+    for (let i = 0; i < used; i++) {
+      for (let j = 0; j <= i; j++)
+        normal[i * used + j] = this.#products[i * width + j]! / (scale[i]! * scale[j]!);
+      normal[i * used + i]! += ridge;
+    }
+    const result = cholesky(normal, used, used, 0);
+    this.#factors.set(key, result);
+    return result;
+  }
 }
 
 /** Monomials up to a degree, by degree, each the product of an earlier one with one coordinate. */

@@ -14,7 +14,7 @@ import {
 import { saturationColumn, score } from './skill.ts';
 
 /** Origins on which structures are compared, spread over the record. */
-const TUNING_ORIGINS = 128;
+export const TUNING_ORIGINS = 128;
 /** Leads averaged when saturation is looked for: a factor of two in lead, so that a chance low is no reach. */
 const SMOOTHED = 5;
 /** Iterated predictors carry at most this many samples at a time (targets of one fit). */
@@ -84,9 +84,10 @@ export async function bestOf(
   prepared: PreparedSetting,
   specs: readonly PredictorSpec[],
   compute: Compute,
+  most = TUNING_ORIGINS,
 ): Promise<PredictorSpec> {
   const leads = sparseLeads(prepared.setting.reach);
-  const origins = chooseOrigins(prepared.starts, TUNING_ORIGINS);
+  const origins = chooseOrigins(prepared.starts, most);
   const errors = await heldOutErrors(prepared.setting, specs, origins, leads, compute);
   const scores = errors.map((e) => score(e, leads.length));
   let best = 0;
@@ -94,18 +95,23 @@ export async function bestOf(
   return specs[best]!;
 }
 
-/** The same predictor, and smoother and finer ones, for a record with other noise or length. */
-export function variantsOf(spec: PredictorSpec, embeddingDimension: number): PredictorSpec[] {
+/** The same predictor with other neighbourhoods: smoother for more noise, smaller for a shorter record. */
+export function variantsOf(
+  spec: PredictorSpec,
+  embeddingDimension: number,
+  change: 'noisier' | 'shorter',
+): PredictorSpec[] {
   if (spec.kind === 'local') {
-    const least = embeddingDimension + 2;
-    return [1, 0.5, 2, 4].map((factor) => ({
+    const least = spec.order === 1 ? embeddingDimension + 2 : 2;
+    return (change === 'noisier' ? [1, 2, 4] : [1, 0.5]).map((factor) => ({
       ...spec,
-      neighbours: Math.min(200, Math.max(spec.order === 1 ? least : 2, Math.round(factor * spec.neighbours))),
+      neighbours: Math.min(200, Math.max(least, Math.round(factor * spec.neighbours))),
     }));
   }
   if (spec.kind === 'polynomial')
     return [
       ...RIDGES.map((ridge) => ({ ...spec, ridge })),
+      // More noise than a polynomial bears may call for a local fit.
       ...directStructures(embeddingDimension, Number.POSITIVE_INFINITY)
         .filter((s) => s.order === 1)
         .slice(-2),
