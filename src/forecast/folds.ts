@@ -13,7 +13,7 @@ export interface FoldSums {
 }
 
 /** Rows per slice. */
-const SLICE = 512;
+const SLICE = 256;
 
 /**
  * @param width length of a row w (regressors and targets together)

@@ -76,7 +76,7 @@ export async function forecastHeldOut(
       ? Math.min(cap, Math.max(shortest, Math.ceil(1.5 * pilot.horizon), options.atLeast ?? 0, 10))
       : cap;
   let prepared = prepareSetting(record, reconstruction, steps);
-  const ours = await chooseStructure(prepared, pilot, compute);
+  const ours = await chooseStructure(prepared, reconstruction, pilot, compute);
   // The chosen structure may reach farther than the pilot's: lengthen until its errors saturate too.
   while (steps < cap && !(await reachesSaturation(prepared, ours, compute))) {
     compute.throwIfAborted();

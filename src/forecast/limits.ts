@@ -208,7 +208,8 @@ function decide(
 function sensorNoise(record: PreparedRecord, noise: Answer): number {
   // Rounding to a step q has standard deviation q / √12 (IEEE Std 1241).
   const rounding = record.resolutionStep / Math.sqrt(12);
-  const known = record.givenNoise ?? (noise.ok ? noise.value : 0);
+  // An upper bound alone does not tell how much of today's error is the sensor's.
+  const known = record.givenNoise ?? (noise.ok && noise.bound !== 'upper' ? noise.value : 0);
   return Math.max(rounding, known);
 }
 

@@ -33,7 +33,11 @@ export function* predictLinear(
     },
     order,
   );
-  const models = Array.from({ length: sums.folds }, (_, f) => autoregression(sums, f, order));
+  const models: ReturnType<typeof autoregression>[] = [];
+  for (let f = 0; f < sums.folds; f++) {
+    models.push(autoregression(sums, f, order));
+    yield 0.5;
+  }
   const range = valueRange(setting);
   const [low, high] = [range.low[target]!, range.high[target]!];
   const last = leads[leads.length - 1]!;
@@ -52,7 +56,7 @@ export function* predictLinear(
       path[order + h] = Math.min(high, Math.max(low, next));
     }
     for (let l = 0; l < leads.length; l++) out[i * leads.length + l] = path[order + leads[l]! - 1]!;
-    if (i % 64 === 63) yield 0.5 + (0.5 * i) / origins.length;
+    if (i % 32 === 31) yield 0.5 + (0.5 * i) / origins.length;
   }
   return out;
 }

@@ -101,7 +101,7 @@ function* iterated(
       for (let c = 0; c < channels; c++)
         for (let s = 0; s < step; s++)
           paths.set(i, c, lead + s + 1, next[i * offsets.length + c * step + s]!);
-    if ((lead / step) % 8 === 7) yield lead / last;
+    if ((lead / step) % 2 === 1) yield lead / last;
   }
   return paths.targets(leads);
 }

@@ -64,13 +64,14 @@ export function* predictPolynomial(
     for (let n = 0; n < specs.length; n++) {
       const spec = specs[n]!;
       const map = fits.map(spec, monomialCount(offsets.length, spec.degree));
+      yield 0.5 + (0.5 * (fold + n / specs.length)) / sums.folds;
       for (let from = 0; from < members.length; from += BATCH) {
         const batch = members.slice(from, from + BATCH);
         const times = Int32Array.from(batch, (i) => origins[i]!);
         const paths = new Paths(setting, range, times, last + spec.step);
         for (let lead = 0; lead < last; lead += spec.step) {
           advance(paths, monomials, map, setting, spec.step, lead, batch.length);
-          if ((lead / spec.step) % 16 === 15)
+          if ((lead / spec.step) % 8 === 7)
             yield 0.5 + (0.5 * (fold + (n + lead / last) / specs.length)) / sums.folds;
         }
         const values = paths.targets(leads);

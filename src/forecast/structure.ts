@@ -64,11 +64,14 @@ export async function lookAhead(
  */
 export async function chooseStructure(
   prepared: PreparedSetting,
+  reconstruction: Reconstruction,
   pilot: Pilot,
   compute: Compute,
 ): Promise<PredictorSpec> {
   const { setting } = prepared;
-  const step = Math.min(setting.delay, LONGEST_STEP, setting.reach);
+  // Steps much shorter than half a correlation time cost more compositions and tell no more.
+  const half = Math.floor(reconstruction.correlationTime.samples / 2);
+  const step = Math.min(Math.max(setting.delay, half), LONGEST_STEP, setting.reach);
   const linear = pilot.ranked.filter((s) => s.order === 1);
   const constant = pilot.ranked.filter((s) => s.order === 0);
   const specs: PredictorSpec[] = [
@@ -122,16 +125,16 @@ export function variantsOf(
 /** Ridges on monomials of unit mean square: rounding alone, a clean and a noisy record. */
 const RIDGES = [1e-9, 1e-6, 1e-3] as const;
 
-function polynomialStructures(prepared: PreparedSetting, delay: number): PredictorSpec[] {
+function polynomialStructures(prepared: PreparedSetting, step: number): PredictorSpec[] {
   const { setting } = prepared;
   const m = setting.offsets.length;
   // The two highest affordable degrees of 2 … 5, ten library vectors to the monomial.
   const degrees = [5, 4, 3, 2]
     .filter((d) => monomialCount(m, d) <= Math.min(MOST_MONOMIALS, prepared.admissible / 10))
     .slice(0, 2);
-  const steps = [...new Set([delay, Math.max(1, Math.floor(delay / 4))])];
+  const steps = [...new Set([step, Math.max(1, Math.floor(step / 4))])];
   return degrees.flatMap((degree) =>
-    steps.flatMap((step) => RIDGES.map((ridge) => ({ kind: 'polynomial', degree, ridge, step }) as const)),
+    steps.flatMap((by) => RIDGES.map((ridge) => ({ kind: 'polynomial', degree, ridge, step: by }) as const)),
   );
 }
 

@@ -82,6 +82,29 @@ describe('lead time', () => {
     expect(same.curve[5]!.rms / base.curve[5]!.rms).toBeCloseTo(64, 5);
   });
 
+  it('answers or refuses whatever the record: short, gappy, stepped, with odd shapes', async () => {
+    await fc.assert(
+      fc.asyncProperty(
+        fc.integer({ min: 20, max: 500 }),
+        fc.integer({ min: 1, max: 12 }),
+        fc.integer({ min: 1, max: 6 }),
+        fc.integer({ min: 0, max: 60 }),
+        fc.array(fc.integer({ min: 0, max: 499 }), { maxLength: 12 }),
+        fc.constantFrom(0, 0.5, 5),
+        fc.option(fc.integer({ min: 1, max: 300 }), { nil: undefined }),
+        async (count, delay, delays, window, holes, step, leadSteps) => {
+          const values = samples.slice(0, count).map((x) => (step > 0 ? step * Math.round(x / step) : x));
+          for (const hole of holes) if (hole < count) values[hole] = Number.NaN;
+          const odd = prepare(values, 0.05);
+          const options = { ...defaults, ...(leadSteps === undefined ? {} : { leadSteps }) };
+          const result = await estimateLeadTime(odd, shape(odd, delay, delays, window, 5), options, compute);
+          expect(JSON.stringify(result)).not.toMatch(/NaN|Infinity|null/);
+        },
+      ),
+      { numRuns: 40 },
+    );
+  });
+
   it('gives the same bits on every backend, and with the same seed', async () => {
     const options = { ...defaults, noise: known(0.1), largest: known(0.9) };
     const results: string[] = [];
