@@ -166,6 +166,9 @@ export function meanDifference(a: Float64Array, b: Float64Array): { mean: number
   return { mean: centre, error: Math.sqrt(squares / Math.max(1, blocks - 1) / blocks) };
 }
 
+/** A 12-bit acquisition over four standard deviations has steps of a thousandth: smaller errors are all perfect. */
+const PERFECT = 1e-3 * 1e-3;
+
 /**
  * The smallest dimension whose error is within one standard error of the best (Breiman et al. 1984,
  * Classification and Regression Trees), with paired differences; among equals the smaller error.
@@ -174,8 +177,8 @@ export function parsimonious(candidates: readonly CandidateErrors[]): CandidateE
   const best = candidates.reduce((a, b) => (mean(b.squares) < mean(a.squares) ? b : a));
   const near = candidates.filter((c) => {
     if (c === best) return true;
-    const { mean: excess, error } = meanDifference(c.squares, best.squares);
-    return excess <= error;
+    const { error } = meanDifference(c.squares, best.squares);
+    return Math.max(mean(c.squares), PERFECT) - Math.max(mean(best.squares), PERFECT) <= error;
   });
   const smallest = near.reduce((m, c) => Math.min(m, c.dimension), Number.POSITIVE_INFINITY);
   return near

@@ -59,8 +59,8 @@ export function chooseDelay(
       minimum === undefined
         ? '1/e point of the autocorrelation (the mutual information has no clear minimum)'
         : 'first minimum of the mutual information (Fraser & Swinney 1986)',
-    // Half the delay and the 1/e point beside it: the forecast decides.
-    candidates: [...new Set([delay, Math.max(1, Math.ceil(delay / 2)), decay])],
+    // Both rules, and half the shorter of the two: the forecast decides.
+    candidates: [...new Set([delay, decay, Math.ceil(Math.min(delay, decay) / 2)])],
     correlationLag,
   };
 }

@@ -61,7 +61,7 @@ export async function reconstruct(
     ),
   ]);
   const candidates = tried.flat();
-  const chosen = decide(candidates, falseNeighbours, choice, options.embeddingDimension);
+  const chosen = decide(candidates, falseNeighbours, choice, channelCount, options.embeddingDimension);
 
   const vectors = delayVectors(record, { delay: chosen.delay, delaysPerChannel: chosen.dimension });
   const separation = await compute.run(separationTask, {
@@ -182,9 +182,14 @@ function decide(
   candidates: readonly CandidateErrors[],
   falseNeighbours: FalseNeighbourCurves,
   choice: DelayChoice,
+  channelCount: number,
   given: number | undefined,
 ): { delay: number; dimension: number; method: string } {
-  const best = parsimonious(candidates);
+  // A signal that goes up and down takes every value at least twice a cycle: one coordinate of one channel
+  // can never tell where on its orbit a flow is.
+  const enough = choice.dynamics === 'map' || channelCount > 1 ? 1 : 2;
+  const admitted = candidates.filter((c) => c.dimension >= enough);
+  const best = parsimonious(admitted.length > 0 ? admitted : candidates);
   const climatology = new Float64Array(best.squares.length).fill(1);
   const gain = meanDifference(climatology, best.squares);
   if (given !== undefined || gain.mean > 2 * gain.error)
@@ -196,7 +201,7 @@ function decide(
           ? choice.method
           : best.delay === choice.delay
             ? `${choice.method}, confirmed by forecast skill`
-            : `best forecast skill among the ${choice.method.replace(/ \(.*/, '')}, its half and the 1/e point`,
+            : 'best forecast skill among the first minimum of the mutual information, the 1/e point and half the shorter',
     };
   const few = falseNeighbours.fraction.findIndex((f) => f !== null && f < FEW_FALSE);
   // Without either, two coordinates: one shows no motion, and each more thins a record that is noise already.
@@ -205,7 +210,7 @@ function decide(
   return {
     delay: choice.delay,
     dimension: Math.min(known, Math.max(...allowed)),
-    method: `${choice.method} (no candidate forecasts better than the mean)`,
+    method: `${choice.method}; no candidate forecasts better than the mean`,
   };
 }
 

@@ -14,7 +14,8 @@ export interface SeparationCurve {
 }
 
 const REFERENCES = 800;
-const LAGS = 60;
+/** Every lag up to this one, and as many evenly spread beyond. */
+const LAGS = 30;
 
 /**
  * Space–time separation (Provenzale, Smith, Vio & Murante 1992, Physica D 58, 31): how far apart states are
@@ -30,11 +31,11 @@ export const separationTask = defineTask(
     const { data, starts, offsets } = vectors;
     const lag: number[] = [];
     const median: number[] = [];
-    const stride = Math.max(1, Math.ceil(farthest / LAGS));
     const skip = Math.max(1, Math.floor(starts.length / REFERENCES));
     const scale = 1 / offsets.length;
     const distances = new Float64Array(Math.ceil(starts.length / skip));
-    for (let l = stride; l <= farthest; l += stride) {
+    const stride = Math.max(1, Math.ceil((farthest - LAGS) / LAGS));
+    for (let l = 1; l <= farthest; l += l < LAGS ? 1 : stride) {
       let n = 0;
       for (let i = 0; i + l < starts.length; i += skip) {
         // Ordinals are l apart in time exactly when no gap lies between.
@@ -60,10 +61,11 @@ export const separationTask = defineTask(
 /** Share of the long-run level that counts as having reached it. */
 const REACHED = 0.95;
 
-/** First lag at which the median distance has reached its long-run level (median over the later half). */
+/** First lag at which the median distance has reached its long-run level (median over the later half of the lags). */
 export function separationLag({ lag, median }: SeparationCurve): number {
   if (lag.length === 0) return 1;
-  const later = Float64Array.from(median.slice(median.length >> 1)).sort();
+  const half = lag[lag.length - 1]! / 2;
+  const later = Float64Array.from(median.filter((_, i) => lag[i]! >= half)).sort();
   const level = later[later.length >> 1]!;
   const reached = median.findIndex((m) => m >= REACHED * level);
   return lag[reached < 0 ? lag.length - 1 : reached]!;

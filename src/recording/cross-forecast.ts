@@ -1,7 +1,7 @@
 import { defineTask } from '../base/compute.ts';
 import type { DelayVectors, Kernels } from '../base/kernels.ts';
 import { createRandom } from '../base/random.ts';
-import { bounds, PARTS, PERMUTATIONS } from './parts.ts';
+import { BLOCKS_PER_PART, bounds, PARTS, PERMUTATIONS, varianceInflation } from './parts.ts';
 
 export interface CrossForecastInput {
   /** Vectors whose target, `targetOffset` from their start, exists. */
@@ -11,6 +11,8 @@ export interface CrossForecastInput {
   readonly targetOffset: number;
   /** Theiler window, samples. */
   readonly exclusion: number;
+  /** 1/e time of the autocorrelation, in samples. */
+  readonly correlationTime: number;
   readonly seed: number;
 }
 
@@ -23,13 +25,12 @@ export interface CrossForecast {
   readonly pValue: number;
 }
 
-const PER_PART = 8;
-const BLOCKS = PARTS * PER_PART;
+const BLOCKS = PARTS * BLOCKS_PER_PART;
 /** Reference points per block and library vectors per block at most: 32 × 32 × 16 local fits in all. */
 const REFERENCES = 16;
 const LIBRARY = 400;
-/** Fewest library vectors of a block. */
-const FEWEST = 20;
+/** Fewest delay vectors of a block: twice the coefficients of a local map of nine coordinates. */
+export const FEWEST_VECTORS = 20;
 const RIDGE = 1e-6;
 
 /**
@@ -96,12 +97,19 @@ export const crossForecastTask = defineTask(
         index.close();
       }
     }
-    return yield* ranked(errors, distances, references.length, input.seed);
+    const inflation = Math.sqrt(varianceInflation(count, input.correlationTime));
+    return yield* ranked(errors, distances, references.length, inflation, input.seed);
   },
 );
 
 /** Blocks from nearest to farthest for each reference point; then every assignment is a short walk. */
-function* ranked(errors: Float64Array, distances: Float64Array, references: number, seed: number) {
+function* ranked(
+  errors: Float64Array,
+  distances: Float64Array,
+  references: number,
+  inflation: number,
+  seed: number,
+) {
   const order = new Uint8Array(references * BLOCKS);
   const numbers = Array.from({ length: BLOCKS }, (_, b) => b);
   for (let i = 0; i < references; i++) {
@@ -115,8 +123,8 @@ function* ranked(errors: Float64Array, distances: Float64Array, references: numb
   const random = createRandom(seed, 3);
   let atLeast = 1;
   for (let k = 0; k < PERMUTATIONS; k++) {
-    if (excess(partErrors(errors, order, references, random.permutation(BLOCKS))) >= excess(observed))
-      atLeast++;
+    const trial = partErrors(errors, order, references, random.permutation(BLOCKS));
+    if (inflation * excess(trial) >= excess(observed)) atLeast++;
     if (k % 20 === 0) yield 0.7 + (0.3 * k) / PERMUTATIONS;
   }
   return { ...observed, pValue: atLeast / (PERMUTATIONS + 1) };
@@ -124,7 +132,7 @@ function* ranked(errors: Float64Array, distances: Float64Array, references: numb
 
 type Sums = Pick<CrossForecast, 'errors' | 'across' | 'within'>;
 
-/** @param slots place of each block: part = ⌊slot / PER_PART⌋ */
+/** @param slots place of each block: part = ⌊slot / BLOCKS_PER_PART⌋ */
 function partErrors(
   errors: Float64Array,
   order: Uint8Array,
@@ -136,15 +144,15 @@ function partErrors(
   const perBlock = references / BLOCKS;
   for (let i = 0; i < references; i++) {
     const slot = slots[Math.floor(i / perBlock)]!;
-    const place = slot % PER_PART;
-    const own = Math.floor(slot / PER_PART);
+    const place = slot % BLOCKS_PER_PART;
+    const own = Math.floor(slot / BLOCKS_PER_PART);
     let found = 0;
     for (let j = 0; found !== (1 << PARTS) - 1 && j < BLOCKS; j++) {
       const block = order[i * BLOCKS + j]!;
       // Its own block may not forecast it; one block of every other part is left out too, so that no part
       // has more to choose from.
-      if (slots[block]! % PER_PART === place) continue;
-      const part = Math.floor(slots[block]! / PER_PART);
+      if (slots[block]! % BLOCKS_PER_PART === place) continue;
+      const part = Math.floor(slots[block]! / BLOCKS_PER_PART);
       if (found & (1 << part)) continue;
       found |= 1 << part;
       sums[part * PARTS + own]! += errors[i * BLOCKS + block]!;
@@ -170,7 +178,7 @@ function blockOrdinals(starts: Int32Array, count: number): Int32Array[] | undefi
     const [, to] = bounds(count, b, BLOCKS);
     const from = i;
     while (i < starts.length && starts[i]! < to) i++;
-    if (i - from < FEWEST) return undefined;
+    if (i - from < FEWEST_VECTORS) return undefined;
     blocks.push(Int32Array.from({ length: i - from }, (_, k) => from + k));
   }
   return blocks;

@@ -100,7 +100,7 @@ function problemsOf(
   if (cycles.count < FEWEST_CYCLES && n >= FEWEST_SAMPLES)
     add(
       'TOO_SHORT',
-      `The record crosses its middle only ${cycles.count} times upwards; at least ${FEWEST_CYCLES} cycles are needed to see what repeats.`,
+      `The record shows ${cycles.count} complete ${cycles.count === 1 ? 'cycle' : 'cycles'}; at least ${FEWEST_CYCLES} are needed to see what repeats.`,
       { cycles: cycles.count, needed: FEWEST_CYCLES },
     );
   const stuckShare = runs.stuck / n;
@@ -233,7 +233,7 @@ function runLengths({ values, segments, sorted }: QualityInput): Runs {
 }
 
 interface Cycles {
-  /** Complete upward crossings of the middle. */
+  /** From upward crossing to upward crossing. */
   readonly count: number;
   /** Samples between the first and the last of them, gaps left out. */
   readonly samples: number;
@@ -246,31 +246,30 @@ const MIDDLES = 8;
  * Cycles by upward crossings of the local median with a dead band of a quarter of the interquartile range
  * to each side, so that noise near the middle is not counted (a Schmitt trigger).
  */
-function dominantCycles({ values, present, segments }: QualityInput): Cycles {
+function dominantCycles({ values, present }: QualityInput): Cycles {
   const count = values.length;
-  let cycles = 0;
-  let samples = 0;
-  const thresholds = Array.from({ length: MIDDLES }, (_, s) =>
+  const bands = Array.from({ length: MIDDLES }, (_, s) =>
     deadBand(values, present, Math.floor((s * count) / MIDDLES), Math.floor(((s + 1) * count) / MIDDLES)),
   );
-  for (const { start, end } of segments) {
-    let low = false;
-    let first = -1;
-    let latest = -1;
-    for (let i = start; i < end; i++) {
-      const v = values[i]!;
-      const band = thresholds[Math.floor((i * MIDDLES) / count)]!;
-      if (v < band.low) low = true;
-      else if (low && v > band.high) {
-        low = false;
-        if (first < 0) first = i;
-        else cycles++;
-        latest = i;
-      }
+  let crossings = 0;
+  let low = false;
+  let samples = 0;
+  let sinceCrossing = 0;
+  for (let i = 0; i < count; i++) {
+    // Missing samples take no time: a gap hides as many cycles as samples, to a good approximation.
+    if (!present[i]) continue;
+    sinceCrossing++;
+    const v = values[i]!;
+    const band = bands[Math.floor((i * MIDDLES) / count)]!;
+    if (v < band.low) low = true;
+    else if (low && v > band.high) {
+      low = false;
+      if (crossings > 0) samples += sinceCrossing;
+      crossings++;
+      sinceCrossing = 0;
     }
-    if (first >= 0) samples += latest - first;
   }
-  return { count: cycles, samples };
+  return { count: Math.max(0, crossings - 1), samples };
 }
 
 function deadBand(values: Float64Array, present: Uint8Array, from: number, to: number) {
