@@ -124,7 +124,9 @@ export async function findLimits(
   const baseline = boundOf(rowsAt(heldOut, stride, steps));
 
   // Worse sensors by whole digits while noise alone does not fill the tolerance; else by half a digit.
-  const levels = [1, 2].slice(0, WORSE_DIGITS).filter((d) => noise * 10 ** d <= 0.5 * input.tolerance * std);
+  const levels = [1, 2]
+    .slice(0, WORSE_DIGITS)
+    .filter((d) => noise * power10(d) <= 0.5 * input.tolerance * std);
   if (levels.length === 0 && noise * ROOT10 <= input.tolerance * std) levels.push(0.5);
   const experiment = async (changed: PreparedRecord, half: boolean) => {
     const prepared = prepareSetting(changed, reconstruction, steps);

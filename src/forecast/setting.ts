@@ -74,7 +74,7 @@ export function everyLead(steps: number): Int32Array {
   return Int32Array.from({ length: steps }, (_, i) => i + 1);
 }
 
-/** Ascending leads 1 … steps, about 13 to the octave of lead beyond the first few. */
+/** Ascending leads 1 … steps, about five to the octave. */
 export function sparseLeads(steps: number): Int32Array {
   const leads: number[] = [];
   for (let lead = 1; lead <= steps; lead = Math.max(lead + 1, Math.floor(lead * 1.15))) leads.push(lead);
