@@ -33,14 +33,19 @@ function distinct(sorted: Float64Array, tolerance: number): Float64Array {
 }
 
 function commonStep(values: Float64Array): number {
-  const gaps = new Float64Array(values.length - 1);
-  for (let i = 0; i < gaps.length; i++) gaps[i] = values[i + 1]! - values[i]!;
-  gaps.sort();
-  if (gaps.length === 0 || !Number.isFinite(gaps[gaps.length - 1]!)) return 0;
+  let least = Number.POSITIVE_INFINITY;
+  for (let i = 1; i < values.length; i++) {
+    const gap = values[i]! - values[i - 1]!;
+    if (gap < least) least = gap;
+  }
+  if (!Number.isFinite(least)) return 0;
   // The median of the single-step gaps averages out the rounding of their ends (decimal steps in float32).
-  let single = 1;
-  while (single < gaps.length && gaps[single]! < 1.5 * gaps[0]!) single++;
-  const smallest = gaps[single >> 1]!;
+  const single: number[] = [];
+  for (let i = 1; i < values.length; i++) {
+    const gap = values[i]! - values[i - 1]!;
+    if (gap < 1.5 * least) single.push(gap);
+  }
+  const smallest = single.sort((a, b) => a - b)[single.length >> 1]!;
   for (let parts = 1; parts <= MOST_PARTS; parts++) {
     const step = fitStep(values, smallest / parts);
     if (step > 0) return step;

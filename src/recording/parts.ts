@@ -61,14 +61,20 @@ export const partsTask = defineTask(
   ): Generator<number, PartsComparison, void> {
     const { means, stds } = partMoments(series, present);
     const inflation = varianceInflation(series.length, correlationTime);
-    const mean = compareParts(series, present, shortestBlock, inflation, createRandom(seed, 1));
-    yield 0.5;
+    const mean = yield* compareParts(series, present, shortestBlock, inflation, createRandom(seed, 1), 0);
     const squares = new Float64Array(series.length);
     for (let i = 0; i < series.length; i++) {
       const d = series[i]! - means[Math.floor((i * PARTS) / series.length)]!;
       squares[i] = d * d;
     }
-    const spread = compareParts(squares, present, shortestBlock, inflation, createRandom(seed, 2));
+    const spread = yield* compareParts(
+      squares,
+      present,
+      shortestBlock,
+      inflation,
+      createRandom(seed, 2),
+      0.5,
+    );
     return { means, stds, mean, spread };
   },
 );
@@ -99,18 +105,21 @@ export function bounds(n: number, k: number, pieces: number): [number, number] {
   return [Math.floor((k * n) / pieces), Math.floor(((k + 1) * n) / pieces)];
 }
 
-function compareParts(
+function* compareParts(
   values: Float64Array,
   present: Uint8Array,
   shortestBlock: number,
   inflation: number,
   random: Random,
-): PartsTest {
+  done: number,
+): Generator<number, PartsTest, void> {
   if (values.length / (PARTS * BLOCKS_PER_PART) < shortestBlock)
     return { pValue: 1, valid: false, measured: false };
   const parts = blockMeans(values, present);
   if (parts === undefined) return { pValue: 1, valid: false, measured: false };
+  yield done + 0.2;
   const valid = !correlated(parts, random) || farApart(parts);
+  yield done + 0.3;
   return { pValue: permutedParts(parts, inflation, random), valid, measured: true };
 }
 

@@ -99,13 +99,14 @@ export function prepareRecording(input: Recording, options: RecordingOptions = {
 
 function findSegments(channels: readonly Float64Array[]) {
   const count = channels[0]!.length;
-  const present = new Uint8Array(count);
+  const present = new Uint8Array(count).fill(1);
+  for (const channel of channels)
+    for (let i = 0; i < count; i++) if (Number.isNaN(channel[i])) present[i] = 0;
   const segments: Segment[] = [];
   let missing = 0;
   let start = -1;
   for (let i = 0; i < count; i++) {
-    const here = channels.every((channel) => !Number.isNaN(channel[i]));
-    present[i] = here ? 1 : 0;
+    const here = present[i] === 1;
     if (here && start < 0) start = i;
     if (!here) {
       missing++;
