@@ -46,8 +46,8 @@ export function argsort(n: number): (values: Float64Array, order: Int32Array) =>
       for (let d = 0; d < DIGITS; d++) counts[d * RADIX + digit(i, d)]!++;
       order[i] = i;
     }
-    let from = order;
-    let to = spare;
+    let from: Int32Array = order;
+    let to: Int32Array = spare;
     for (let d = 0; d < DIGITS; d++) {
       const base = d * RADIX;
       let position = 0;
