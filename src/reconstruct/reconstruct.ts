@@ -1,19 +1,17 @@
-import { type Refusal, refusal } from '../base/answer.ts';
+import type { Refusal } from '../base/answer.ts';
 import type { Compute } from '../base/compute.ts';
 import { log } from '../base/elementary.ts';
 import { blockingProblem, FEWEST_SAMPLES } from '../recording/quality.ts';
 import type { PreparedRecord } from '../recording/types.ts';
 import { delayVectors } from '../recording/vectors.ts';
-import { type CandidateErrors, candidateTask, mean, meanDifference, parsimonious } from './candidates.ts';
+import { mean } from './candidates.ts';
+import { type Chosen, chooseByForecast, mostDelays } from './choose.ts';
 import { type CorrelationCurves, correlationTask } from './correlation.ts';
 import { chooseDelay, type DelayChoice } from './delay.ts';
 import { type FalseNeighbourCurves, falseNeighbourTask } from './false-neighbours.ts';
 import { separationLag, separationTask } from './theiler.ts';
 import type { Reconstruction, ReconstructOptions } from './types.ts';
 
-/** Delays per channel tried at most, and coordinates in all. */
-const MOST_DELAYS = 10;
-const MOST_COORDINATES = 16;
 /** Largest share of the record that neighbours may be barred from around each point. */
 const WIDEST_WINDOW = 0.1;
 /** A share of false neighbours below this is taken for none (Kennel et al. 1992 look for about 1 %; noise adds some). */
@@ -35,33 +33,14 @@ export async function reconstruct(
   const curves = await compute.run(correlationTask, { series, present: record.present });
   const choice = chooseDelay(curves, options.dynamics ?? 'auto', options.delay);
 
-  const shapes = candidateShapes(record, choice, options.embeddingDimension);
-  if ('ok' in shapes) return shapes;
-  const { dimensions, delays, lead, starts } = shapes;
-  const reach = Math.max(...delays) * (dimensions[dimensions.length - 1]! - 1);
   const widest = Math.floor(WIDEST_WINDOW * count);
-  const exclusion = Math.min(Math.max(choice.correlationLag, reach), widest) + lead;
-
-  const [falseNeighbours, tried] = await Promise.all([
+  const [falseNeighbours, forecast] = await Promise.all([
     judgeFalseNeighbours(record, choice, Math.min(choice.correlationLag, widest), compute),
-    compute.map(
-      candidateTask,
-      delays.map((delay) => ({
-        data: scaled,
-        starts,
-        count,
-        channelCount,
-        target,
-        delay,
-        dimensions,
-        lead,
-        exclusion,
-        stopEarly: options.embeddingDimension === undefined,
-      })),
-    ),
+    chooseByForecast(record, choice, options.embeddingDimension, widest, compute),
   ]);
-  const candidates = tried.flat();
-  const chosen = decide(candidates, falseNeighbours, choice, channelCount, options.embeddingDimension);
+  if ('ok' in forecast) return forecast;
+  const { candidates } = forecast;
+  const chosen = decide(forecast, falseNeighbours, choice, channelCount, options.embeddingDimension);
 
   const vectors = delayVectors(record, { delay: chosen.delay, delaysPerChannel: chosen.dimension });
   const separation = await compute.run(separationTask, {
@@ -108,50 +87,6 @@ const LN2 = log(2);
 /** The separation plot is followed to this many correlation times: several cycles of an oscillation. */
 const SEPARATION_LAGS = 40;
 
-/**
- * The grid of candidates, cut down to shapes the record has room for: all are judged on the same vectors, at
- * least 200 and, so that gaps do not leave a biased rest, at least half of those that two delays would have.
- */
-function candidateShapes(record: PreparedRecord, choice: DelayChoice, given: number | undefined) {
-  const most =
-    given ?? Math.max(1, Math.min(MOST_DELAYS, Math.floor(MOST_COORDINATES / record.channelCount)));
-  // A lead of one characteristic time: at one sample of an oversampled flow every candidate is good.
-  const lead = Math.max(1, Math.min(choice.correlationLag, Math.floor(record.count / 20)));
-  const longest = Math.max(...choice.candidates);
-  const wanted = (m: number, delay: number) =>
-    delayVectors(record, { delay, delaysPerChannel: m }, lead).starts;
-  const plain = countVectors(record, longest, lead);
-  let m = most;
-  let delays = choice.candidates;
-  let starts = wanted(m, longest);
-  while (given === undefined && m > 1 && starts.length < Math.max(FEWEST_SAMPLES, plain / 2))
-    starts = wanted(--m, longest);
-  if (given !== undefined && starts.length < FEWEST_SAMPLES && delays.length > 1) {
-    delays = [Math.min(...delays)];
-    starts = wanted(m, delays[0]!);
-  }
-  if (starts.length < FEWEST_SAMPLES) {
-    const needed = FEWEST_SAMPLES + (m - 1) * Math.min(...delays) + lead;
-    return refusal(
-      'TOO_SHORT',
-      `The record leaves ${starts.length} complete delay vectors (${m} ${m === 1 ? 'coordinate' : 'coordinates'} ${Math.min(...delays)} samples apart, forecast ${lead} samples ahead, ${record.segments.length} unbroken ${record.segments.length === 1 ? 'stretch' : 'stretches'}); at least ${FEWEST_SAMPLES} are needed to compare forecasts on parts of it.`,
-      `Record at least ${needed} samples without a gap${given !== undefined || choice.method === 'given' ? ', or ask for a shorter delay or a smaller dimension' : ''}.`,
-      { vectors: starts.length, needed },
-    );
-  }
-  return {
-    dimensions: given !== undefined ? [given] : Array.from({ length: m }, (_, i) => i + 1),
-    delays,
-    lead,
-    starts,
-  };
-}
-
-/** Vectors of two delays (the fewest that show a direction of motion). */
-function countVectors(record: PreparedRecord, delay: number, lead: number): number {
-  return record.segments.reduce((n, s) => n + Math.max(0, s.end - s.start - delay - lead), 0);
-}
-
 async function judgeFalseNeighbours(
   record: PreparedRecord,
   choice: DelayChoice,
@@ -159,7 +94,7 @@ async function judgeFalseNeighbours(
   compute: Compute,
 ): Promise<FalseNeighbourCurves> {
   const { scaled, count, channelCount, target } = record;
-  let dimensions = Math.max(1, Math.min(MOST_DELAYS, Math.floor(MOST_COORDINATES / channelCount)));
+  let dimensions = mostDelays(channelCount);
   const startsFor = (m: number) =>
     delayVectors(record, { delay: choice.delay, delaysPerChannel: m + 1 }).starts;
   let starts = startsFor(dimensions);
@@ -179,37 +114,32 @@ async function judgeFalseNeighbours(
 
 /** The forecast decides; where nothing can be forecast, the false neighbours do. */
 function decide(
-  candidates: readonly CandidateErrors[],
+  { best, candidates, lead }: Chosen,
   falseNeighbours: FalseNeighbourCurves,
   choice: DelayChoice,
   channelCount: number,
   given: number | undefined,
 ): { delay: number; dimension: number; method: string } {
-  // A signal that goes up and down takes every value at least twice a cycle: one coordinate of one channel
-  // can never tell where on its orbit a flow is.
-  const enough = choice.dynamics === 'map' || channelCount > 1 ? 1 : 2;
-  const admitted = candidates.filter((c) => c.dimension >= enough);
-  const best = parsimonious(admitted.length > 0 ? admitted : candidates);
-  const climatology = new Float64Array(best.squares.length).fill(1);
-  const gain = meanDifference(climatology, best.squares);
-  if (given !== undefined || gain.mean > 2 * gain.error)
+  if (best !== null) {
+    const { delay, dimension } = best;
+    if (choice.candidates.length === 1) return { delay, dimension, method: choice.method };
     return {
-      delay: best.delay,
-      dimension: best.dimension,
+      delay,
+      dimension,
       method:
-        choice.candidates.length === 1
-          ? choice.method
-          : best.delay === choice.delay
-            ? `${choice.method}, confirmed by forecast skill`
-            : 'best forecast skill among the first minimum of the mutual information, the 1/e point and half the shorter',
+        delay === choice.delay
+          ? `${choice.method}, confirmed by forecast skill`
+          : `best forecast skill ${lead} ${lead === 1 ? 'sample' : 'samples'} ahead, among the first minimum of the mutual information, the 1/e point and shorter delays`,
     };
+  }
   const few = falseNeighbours.fraction.findIndex((f) => f !== null && f < FEW_FALSE);
   // Without either, two coordinates: one shows no motion, and each more thins a record that is noise already.
-  const known = few >= 0 ? falseNeighbours.dimension[few]! : 2;
-  const allowed = candidates.filter((c) => c.delay === choice.delay).map((c) => c.dimension);
+  const known = given ?? (few >= 0 ? falseNeighbours.dimension[few]! : channelCount > 1 ? 1 : 2);
+  const delay = candidates.some((c) => c.delay === choice.delay) ? choice.delay : candidates[0]!.delay;
+  const room = Math.max(...candidates.filter((c) => c.delay === delay).map((c) => c.dimension));
   return {
-    delay: choice.delay,
-    dimension: Math.min(known, Math.max(...allowed)),
+    delay,
+    dimension: Math.min(known, room),
     method: `${choice.method}; no candidate forecasts better than the mean`,
   };
 }

@@ -15,6 +15,8 @@ export const FEWEST_CYCLES = 10;
  * coordinates, 1 % of samples spoils 5 % of the delay vectors, the level of the tests made on them.
  */
 const MOST_FALSE_SAMPLES = 0.01;
+/** Samples at a natural bound of zero are measured, but states there cannot be told apart: a tenth at most. */
+const MOST_ZEROS = 0.1;
 /** More samples per cycle than this only repeat each other. */
 const OVERSAMPLED = 200;
 /** Rounding to steps wider than the signal's standard deviation leaves about five levels: distances are then ties. */
@@ -116,6 +118,12 @@ function problemsOf(
       `${percent(clipping.share)} of the samples sit exactly at the ${clipping.ends} of the range, more than the values next to it and the resolution explain: the record is clipped.`,
       { share: clipping.share, ends: clipping.ends },
     );
+  if (clipping.zeros > 0)
+    add(
+      clipping.zeros > MOST_ZEROS ? 'SATURATED' : 'BOUNDED_BY_ZERO',
+      `${percent(clipping.zeros)} of the samples are exactly 0, the end of the range: states there cannot be told apart, whether the quantity is bounded by nature or the record is clipped.`,
+      { share: clipping.zeros },
+    );
   if (input.step > WIDEST_STEP * input.std)
     add(
       'NOISE_FLOOR',
@@ -152,9 +160,11 @@ interface Clipping {
   /** Share of all samples that are clipped; 0 when none is. */
   readonly share: number;
   readonly ends: string;
+  /** Share of samples at a bound of exactly zero, which a count or a rainfall has by nature. */
+  readonly zeros: number;
 }
 
-const NO_CLIPPING: Clipping = { share: 0, ends: '' };
+const NO_CLIPPING: Clipping = { share: 0, ends: '', zeros: 0 };
 
 /**
  * A smooth extremum spends time ∝ √δ within δ of it, so a quantiser's outermost level, at most one step
@@ -170,6 +180,7 @@ function findClipping(sorted: Float64Array, step: number, distinctValues: number
   const rounding = 16 * 2 ** -52 * Math.max(Math.abs(sorted[0]!), Math.abs(sorted[n - 1]!));
   const same = step > 0 ? Math.min(rounding, step / 2) : rounding;
   let share = 0;
+  let zeros = 0;
   const ends: string[] = [];
   for (const side of [1, -1] as const) {
     const outermost = extremes(sorted, side);
@@ -183,10 +194,14 @@ function findClipping(sorted: Float64Array, step: number, distinctValues: number
     // A sample each for the ends of a run; on a lattice counts also scatter: three standard errors of a difference.
     const margin = step > 0 ? 3 * Math.sqrt(outermost + next) + 2 : 2;
     if (outermost <= next + margin) continue;
+    if (fromEnd(0) === 0) {
+      zeros = outermost / n;
+      continue;
+    }
     share += outermost / n;
     ends.push(side > 0 ? 'top' : 'bottom');
   }
-  return share > 0 ? { share, ends: ends.join(' and the ') } : NO_CLIPPING;
+  return { share, ends: ends.join(' and the '), zeros };
 }
 
 interface Runs {
@@ -218,7 +233,9 @@ function runLengths({ values, segments, sorted }: QualityInput): Runs {
       if (i < segment.end && values[i] === values[i - 1]) continue;
       const length = i - from;
       if (length > longest) longest = length;
-      if (length >= SHORTEST_STUCK) long.push(length);
+      // Rest at a bound of zero is judged as such, not as a stuck sensor.
+      if (length >= SHORTEST_STUCK && !(values[from] === 0 && (sorted[0] === 0 || sorted[n - 1] === 0)))
+        long.push(length);
       // A run belongs to every stretch it touches.
       const last = Math.floor(((i - 1) * STRETCHES) / end);
       for (let s = Math.floor((from * STRETCHES) / end); s <= last; s++)

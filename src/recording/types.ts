@@ -50,8 +50,8 @@ export interface RecordQuality {
   readonly samplesPerCycle: number | null;
   /**
    * What is wrong with the record. Entries whose code is a `RefusalCode` (CONSTANT, TOO_SHORT, STUCK, SATURATED,
-   * NOISE_FLOOR) block the analysis (`blockingProblem`); the others (CLIPPED_BRIEFLY, STUCK_BRIEFLY, OVERSAMPLED,
-   * CHANNEL_CONSTANT) are remarks.
+   * NOISE_FLOOR) block the analysis (`blockingProblem`); the others (CLIPPED_BRIEFLY, STUCK_BRIEFLY,
+   * BOUNDED_BY_ZERO, OVERSAMPLED, CHANNEL_CONSTANT) are remarks.
    */
   readonly problems: readonly Caution[];
 }

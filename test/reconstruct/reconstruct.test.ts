@@ -187,6 +187,14 @@ describe('noise, gaps, channels', () => {
     expect(r.vectors).toBe(5000 - 10 * 7 - 11 * (r.delaysPerChannel - 1) * r.delay.samples);
   });
 
+  it('nothing to forecast a correlation time ahead: a shorter lead is compared', async () => {
+    const r = await found(autoregression(4000, 0.9));
+    expect(r.correlationTime.samples).toBeGreaterThan(7);
+    // exact: of a first-order autoregression φ^2h of the variance can be forecast h ahead. At the correlation
+    // time that is e^-2, within the scatter of local fits; at a quarter of it (3 samples) the error is 0.685.
+    expect(Math.abs(least(r) - Math.sqrt(1 - 0.9 ** 6))).toBeLessThan(0.1);
+  });
+
   it('several channels: delays per channel', async () => {
     const states = flow(lorenzField(), [1, 1, 20], 0.05, 3000);
     const channels = [0, 1, 2].map((c) => Float64Array.from(states, (s) => s[c]!));

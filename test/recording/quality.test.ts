@@ -127,6 +127,15 @@ describe('clipping', () => {
         expect(codes(quantise(noise(3000, seed), step))).not.toContain('SATURATED');
   });
 
+  it('at a bound of zero may be nature: a remark up to a tenth of the record', () => {
+    // Monthly counts, rainfall: many zeros, none below.
+    const counts = (level: number) => noise(4000).map((v) => Math.max(0, v + level));
+    expect(codes(counts(1.7))).toEqual(['BOUNDED_BY_ZERO']);
+    expect(codes(counts(0.5))).toContain('SATURATED');
+    const rest = counts(2.5).fill(0, 700, 750);
+    expect(codes(rest)).toEqual(['BOUNDED_BY_ZERO']);
+  });
+
   it('is not seen in the logistic map, whose density is singular at both ends', () => {
     let x = 0.3;
     const samples = Float64Array.from({ length: 5000 }, () => (x = 4 * x * (1 - x)));
