@@ -65,8 +65,9 @@ export async function chooseByForecast(
       })),
     );
     const candidates = tried.flat();
-    const best = withSkill(candidates, choice, channelCount, given);
-    if (best !== null || lead === 1 || attempt + 1 === ATTEMPTS) return { best, candidates, lead };
+    const last = lead === 1 || attempt + 1 === ATTEMPTS;
+    const best = withSkill(candidates, choice, channelCount, given, last ? 1 : 2);
+    if (best !== null || last) return { best, candidates, lead };
   }
 }
 
@@ -118,14 +119,16 @@ function candidateShapes(
 }
 
 /**
- * The parsimonious best when it beats the mean by more than a standard error. (On noise all candidates are worse
- * than the mean, so that chance does not pass this easily.)
+ * The parsimonious best when it beats the mean by more than `errors` standard errors: two while a shorter lead
+ * can still be tried, else one. (On noise all candidates are worse than the mean, so that chance does not pass
+ * this easily.)
  */
 function withSkill(
   candidates: readonly CandidateErrors[],
   choice: DelayChoice,
   channelCount: number,
   given: number | undefined,
+  errors: number,
 ): CandidateErrors | null {
   // A signal that goes up and down takes every value at least twice a cycle: one coordinate of one channel
   // can never tell where on its orbit a flow is.
@@ -135,5 +138,5 @@ function withSkill(
   if (given !== undefined && choice.candidates.length === 1) return best; // nothing left to choose
   const climatology = new Float64Array(best.squares.length).fill(1);
   const gain = meanDifference(climatology, best.squares);
-  return gain.mean > gain.error ? best : null;
+  return gain.mean > errors * gain.error ? best : null;
 }

@@ -188,7 +188,7 @@ describe('noise, gaps, channels', () => {
   });
 
   it('nothing to forecast a correlation time ahead: a shorter lead is compared', async () => {
-    const r = await found(autoregression(4000, 0.9));
+    const r = await found(autoregression(1500, 0.9));
     expect(r.correlationTime.samples).toBeGreaterThan(7);
     // exact: of a first-order autoregression φ^2h of the variance can be forecast h ahead. At the correlation
     // time that is e^-2, within the scatter of local fits; at a quarter of it (3 samples) the error is 0.685.
