@@ -2,7 +2,7 @@
 // `list` is the address of distance 0; 8 bytes before it stand −Infinity, the sentinel of the shift.
 // Both arrays are padded to an even length; ordinals begin `half` bytes after the distances.
 
-/** Lists longer than this stop shifting at the candidate's place; shorter ones pass without a branch. */
+/** Beyond this length a pass costs more than a mispredicted test of whether it is needed. */
 const LONG: i32 = 16;
 
 /** Bytes from distances to ordinals: k rounded up to even, and the 16 bytes that hold the sentinel. */
@@ -25,6 +25,8 @@ export function clearList(list: usize, k: i32): void {
 /**
  * Takes a candidate in, if it is among the k best. SIMD: without a branch that depends on the data (mispredicted
  * branches of the list were two thirds of a query's time), since new = max(one before, min(old, candidate)).
+ * Up to k = 64 this pass also beats finding the place and moving what is behind it, which stalls on stores
+ * that the next insertion reads at another alignment.
  */
 // @ts-ignore: decorator
 @inline export function insert(list: usize, k: i32, distance: f64, ordinal: i32): void {
@@ -46,7 +48,6 @@ export function clearList(list: usize, k: i32): void {
         at + half,
         v128.bitselect(v128.bitselect(indexBefore, index, v128.lt<f64>(d, before)), oldIndex, shifts),
       );
-      if (k > LONG && !v128.any_true(shifts)) break;
     }
     if (v128.any_true(ties)) settle(list, k, distance, ordinal);
   } else {

@@ -58,7 +58,9 @@ export interface QueryPoints {
 /**
  * A k-d tree over delay vectors (Friedman, Bentley & Finkel 1977, ACM Trans. Math. Softw. 3, 209).
  * A neighbour `j` of a query at time `t` is admissible when `|starts[j] − t| > exclusion`
- * (Theiler 1986); `exclusion = −1` admits everything, the point itself included.
+ * (Theiler 1986); `exclusion = −1` admits everything, the point itself included. Coordinates are added in
+ * order; Euclidean distances are ranked by their squares, which tell apart what the root may not. A distance
+ * that overflows is nowhere a neighbour; a radius taken from a returned distance finds that neighbour.
  */
 export interface NeighbourIndex {
   readonly count: number;
@@ -228,7 +230,14 @@ export interface HalfSpectrum {
 }
 
 /** Vector fields built into the kernels; `src/model/` holds the same fields with source and parameters. */
-export type FieldName = 'lorenz' | 'rossler' | 'hyperchaotic-rossler' | 'chua' | 'ueda' | 'quadratic-jerk' | 'lorenz-96';
+export type FieldName =
+  | 'lorenz'
+  | 'rossler'
+  | 'hyperchaotic-rossler'
+  | 'chua'
+  | 'ueda'
+  | 'quadratic-jerk'
+  | 'lorenz-96';
 
 export interface FlowInput {
   readonly field: FieldName;
