@@ -1,5 +1,6 @@
 // Entry of both builds (SIMD and scalar). Each subject file exports its kernels; the ABI is known only
 // here and in src/core/. Kernels take addresses and counts, never allocate, and import nothing.
+export { argsortScratch } from './argsort';
 export * from './correlation';
 export * from './delays';
 export * from './divergence';
