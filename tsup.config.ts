@@ -1,14 +1,27 @@
+import { readFileSync } from 'node:fs';
+import { deflateRawSync } from 'node:zlib';
 import { defineConfig, type Options } from 'tsup';
+
+/** The kernels travel deflated: base64 of raw wasm would no longer compress. `core/open.ts` inflates them. */
+export const deflatedWasm = (file: string): Uint8Array => deflateRawSync(readFileSync(file), { level: 9 });
+
+const inlineWasm: NonNullable<Options['esbuildPlugins']>[number] = {
+  name: 'inline-wasm',
+  setup(build) {
+    build.onLoad({ filter: /\.wasm$/ }, ({ path }) => ({ contents: deflatedWasm(path), loader: 'binary' }));
+  },
+};
 
 const shared: Options = {
   target: 'es2022',
   platform: 'neutral',
   removeNodeProtocol: false,
-  loader: { '.wasm': 'binary', '.txt': 'text' },
+  loader: { '.txt': 'text' },
+  esbuildPlugins: [inlineWasm],
   clean: false,
   splitting: false,
   treeshake: true,
-  sourcemap: false,
+  minify: true,
 };
 
 /** `npm run build` calls tsup twice: first the worker, which the second pass inlines as text. */
@@ -19,7 +32,6 @@ export default defineConfig((options) =>
           ...shared,
           entry: { 'leadspan.worker': 'src/engine/worker.ts' },
           format: ['iife'],
-          minify: true,
           outDir: 'dist/worker',
           outExtension: () => ({ js: '.txt' }),
         },
@@ -27,6 +39,8 @@ export default defineConfig((options) =>
     : [
         {
           ...shared,
+          // Splitting keeps the worker's text and what the entries share in chunks of their own.
+          splitting: true,
           entry: {
             index: 'src/index.ts',
             kernels: 'src/kernels.ts',

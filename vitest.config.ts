@@ -1,6 +1,7 @@
 import { readFileSync } from 'node:fs';
 import { fileURLToPath } from 'node:url';
 import { defineConfig } from 'vitest/config';
+import { deflatedWasm } from './tsup.config.ts';
 
 /**
  * Sources import the built kernels and the built worker as modules (see "Build" in DEVELOPERS.md).
@@ -11,7 +12,7 @@ const inlineBuiltParts = {
   enforce: 'pre' as const,
   load(id: string) {
     if (id.endsWith('.wasm')) {
-      const base64 = readFileSync(id).toString('base64');
+      const base64 = Buffer.from(deflatedWasm(id)).toString('base64');
       return `export default Uint8Array.from(atob(${JSON.stringify(base64)}), (c) => c.charCodeAt(0));`;
     }
     if (id.endsWith('.worker.txt')) return `export default ${JSON.stringify(readFileSync(id, 'utf8'))};`;

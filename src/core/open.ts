@@ -1,5 +1,5 @@
-import scalarBytes from '../../dist/wasm/leadspan-scalar.wasm';
-import simdBytes from '../../dist/wasm/leadspan-simd.wasm';
+import scalarDeflated from '../../dist/wasm/leadspan-scalar.wasm';
+import simdDeflated from '../../dist/wasm/leadspan-simd.wasm';
 import { badOption, LeadspanError } from '../base/errors.ts';
 import type { BackendName, Kernels } from '../base/kernels.ts';
 import { type BackendModule, createKernels } from './create.ts';
@@ -34,9 +34,12 @@ export async function loadBackend(options: OpenOptions = {}): Promise<BackendMod
   }
   try {
     if (options.wasm !== undefined) return await fromOutside(options.wasm);
-    const simd = choice === 'wasm-simd' || (choice !== 'wasm-scalar' && WebAssembly.validate(simdBytes));
-    const module = await WebAssembly.compile(simd ? simdBytes : scalarBytes);
-    return { backend: simd ? 'wasm-simd' : 'wasm-scalar', module };
+    if (choice !== 'wasm-scalar') {
+      const bytes = await inflate(simdDeflated);
+      if (choice === 'wasm-simd' || WebAssembly.validate(bytes))
+        return { backend: 'wasm-simd', module: await WebAssembly.compile(bytes) };
+    }
+    return { backend: 'wasm-scalar', module: await WebAssembly.compile(await inflate(scalarDeflated)) };
   } catch (cause) {
     // A policy without 'wasm-unsafe-eval' refuses compilation: plain JavaScript gives the same bits.
     if (choice === 'auto' && options.wasm === undefined) return { backend: 'js', module: null };
@@ -44,6 +47,12 @@ export async function loadBackend(options: OpenOptions = {}): Promise<BackendMod
       cause,
     });
   }
+}
+
+/** The wasm travels deflated (RFC 1951). */
+async function inflate(deflated: Uint8Array<ArrayBuffer>): Promise<ArrayBuffer> {
+  const stream = new Blob([deflated]).stream().pipeThrough(new DecompressionStream('deflate-raw'));
+  return new Response(stream).arrayBuffer();
 }
 
 async function fromOutside(wasm: WasmSource): Promise<BackendModule> {

@@ -104,7 +104,7 @@ export class WorkerPool {
   }
 
   async #add(): Promise<void> {
-    const member: Member = { port: spawnWorker(this.#hostWorker), order: undefined, alive: false };
+    const member: Member = { port: await spawnWorker(this.#hostWorker), order: undefined, alive: false };
     this.#members.push(member);
     await new Promise<void>((resolve, reject) => {
       const timer = setTimeout(

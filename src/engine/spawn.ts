@@ -1,4 +1,3 @@
-import workerSource from '../../dist/worker/leadspan.worker.txt';
 import type { FromWorker, ToWorker } from './messages.ts';
 import { builtin, type NodeWorker } from './platform.ts';
 
@@ -28,9 +27,11 @@ export interface WebWorkerLike {
  * wrong URL can hang without an error. Hosts whose policy forbids Blob workers pass `worker`.
  * @throws whatever the host throws when it allows no workers
  */
-export function spawnWorker(hostWorker: (() => WebWorkerLike) | undefined): WorkerPort {
+export async function spawnWorker(hostWorker: (() => WebWorkerLike) | undefined): Promise<WorkerPort> {
   const threads = builtin('node:worker_threads');
   if (hostWorker) return fromWebWorker(hostWorker());
+  // A chunk of its own, loaded only where workers are wanted.
+  const { workerSource } = await import('./worker-source.ts');
   if (threads) return fromNodeWorker(new threads.Worker(workerSource, { eval: true, name: 'leadspan' }));
   const url = URL.createObjectURL(new Blob([workerSource], { type: 'text/javascript' }));
   const port = fromWebWorker(new Worker(url, { name: 'leadspan' }) as unknown as WebWorkerLike);
