@@ -23,7 +23,7 @@ export function argsort(values: usize, n: i32, order: usize, scratch: usize): vo
     store<u64>(keys + ((<usize>i) << 3), key);
     store<i32>(order + ((<usize>i) << 2), i);
     for (let d = 0; d < DIGITS; d++) {
-      const c = counts + ((<usize>((d << DIGIT) + <i32>((key >> (<u64>(d * DIGIT))) & (RADIX - 1)))) << 2);
+      const c = counts + ((<usize>((d << DIGIT) + <i32>((key >> <u64>(d * DIGIT)) & (RADIX - 1)))) << 2);
       store<i32>(c, load<i32>(c) + 1);
     }
   }

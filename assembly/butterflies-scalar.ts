@@ -1,6 +1,6 @@
 // Radix passes of the Stockham transform without SIMD. Twin of src/fallback/fourier.ts.
 
-import { COS_144, COS_72, SIN_144, SIN_60, SIN_72 } from './fourier-constants';
+import { COS_72, COS_144, SIN_60, SIN_72, SIN_144 } from './fourier-constants';
 
 // @ts-ignore: decorator
 @inline

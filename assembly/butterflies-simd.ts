@@ -1,7 +1,7 @@
 // Radix passes of the Stockham transform with one v128 per complex number. Twin of the scalar passes and of
 // src/fallback/fourier.ts, operation by operation: a − b·s is written a + b·(−s), which has the same bits.
 
-import { COS_144, COS_72, SIN_144, SIN_60, SIN_72 } from './fourier-constants';
+import { COS_72, COS_144, SIN_60, SIN_72, SIN_144 } from './fourier-constants';
 
 // @ts-ignore: decorator
 @inline
