@@ -1,5 +1,6 @@
 import type { Task } from '../base/compute.ts';
 import { LeadspanError } from '../base/errors.ts';
+import { DIVERGENCE_TASKS } from '../divergence/tasks.ts';
 import { EVIDENCE_TASKS } from '../evidence/tasks.ts';
 import { FORECAST_TASKS } from '../forecast/tasks.ts';
 import { GEOMETRY_TASKS } from '../geometry/tasks.ts';
@@ -13,6 +14,7 @@ const TASKS: ReadonlyMap<string, Task<never, unknown>> = new Map(
     ...RECORDING_TASKS,
     ...RECONSTRUCT_TASKS,
     ...GEOMETRY_TASKS,
+    ...DIVERGENCE_TASKS,
     ...FORECAST_TASKS,
     ...EVIDENCE_TASKS,
     spectrumTask,
