@@ -22,7 +22,12 @@ export interface DivergenceCurve {
   /** ln of mean distance over neighbourhoods (Kantz 1994), same unit. */
   readonly neighbourhood: readonly (number | null)[];
   /** The straight part used: lead range, slope in 1 / time unit, value at lead 0. */
-  readonly fit: { readonly from: number; readonly to: number; readonly slope: number; readonly intercept: number } | null;
+  readonly fit: {
+    readonly from: number;
+    readonly to: number;
+    readonly slope: number;
+    readonly intercept: number;
+  } | null;
   /** ln of the typical distance between unrelated states: where growth must stop. */
   readonly ceiling: number;
 }
