@@ -211,7 +211,10 @@ export interface LocalFits {
 export interface SurrogateInput {
   /** The values of the record, any order; the surrogate is a permutation of them. Length 2^a·3^b·5^c ≥ 8. */
   readonly values: Float64Array;
-  /** A random permutation of 0 … n − 1 (Fisher–Yates from the caller's seed): the starting shuffle. */
+  /**
+   * The starting rank of each sample, a permutation of 0 … n − 1: a random one (Fisher–Yates from the
+   * caller's seed), or `ranks` of an earlier call, which goes on from there with the same bits.
+   */
   readonly permutation: Int32Array;
   /** Iterations at most; stops earlier when the rank order no longer changes. */
   readonly iterations: number;
@@ -219,6 +222,8 @@ export interface SurrogateInput {
 
 export interface Surrogate {
   readonly values: Float64Array;
+  /** Rank of each sample among the sorted values: the whole state of the iteration. */
+  readonly ranks: Int32Array;
   readonly iterations: number;
   readonly converged: boolean;
 }

@@ -86,7 +86,12 @@ export function createFourier({
         const sortedView = heap.i32(sortedOrder, n);
         const out = new Float64Array(n);
         for (let t = 0; t < n; t++) out[t] = values[sortedView[ranksView[t]!]!]!;
-        return { values: out, iterations: code >> 1, converged: (code & 1) === 1 };
+        return {
+          values: out,
+          ranks: scope.copyI32(ranks, n),
+          iterations: code >> 1,
+          converged: (code & 1) === 1,
+        };
       }),
   };
 }

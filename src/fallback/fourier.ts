@@ -398,5 +398,5 @@ export function surrogate({ values, permutation, iterations }: SurrogateInput): 
     }
     done++;
   }
-  return { values: Float64Array.from(ranks, (r) => sorted[r]!), iterations: done, converged };
+  return { values: Float64Array.from(ranks, (r) => sorted[r]!), ranks, iterations: done, converged };
 }

@@ -1,6 +1,7 @@
 import { defineTask } from '../base/compute.ts';
 import type { Kernels } from '../base/kernels.ts';
 import { createRandom } from '../base/random.ts';
+import { amplitudeAdjustedSurrogate } from '../recording/surrogate.ts';
 import { BLOCKS, drawReferences } from './setup.ts';
 import { correlationSumsTask, type PairCounts, type SumsTaskInput } from './sums.ts';
 
@@ -22,7 +23,7 @@ export const linearTwinTask = defineTask(
   function* (kernels: Kernels, input: LinearTwinInput): Generator<number, PairCounts[], void> {
     const { references, seed, series: values, ...rest } = input;
     const permutation = createRandom(seed, 33).permutation(values.length);
-    const series = kernels.surrogate({ values, permutation, iterations: ITERATIONS }).values;
+    const series = yield* amplitudeAdjustedSurrogate(kernels, values, permutation, ITERATIONS);
     yield 0.1;
     const valid = new Uint8Array(series.length - (input.dimensions - 1) * input.delay).fill(1);
     const out: PairCounts[] = [];

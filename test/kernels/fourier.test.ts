@@ -129,6 +129,16 @@ describe('iterative amplitude-adjusted surrogates', () => {
     expect(made).not.toEqual(values);
   });
 
+  it('go on from the ranks of an earlier call with the same bits', () => {
+    const values = autoregression(500, 0.7, 9);
+    const permutation = createRandom(9, 1).permutation(500);
+    const whole = same((k) => k.surrogate({ values, permutation, iterations: 12 }));
+    const half = same((k) => k.surrogate({ values, permutation, iterations: 5 }));
+    const rest = same((k) => k.surrogate({ values, permutation: half.ranks, iterations: 7 }));
+    expect(rest.values).toEqual(whole.values);
+    expect(half.iterations + rest.iterations).toBe(whole.iterations);
+  });
+
   it('survive a constant and a two-valued series', () => {
     for (const values of [new Float64Array(64).fill(3), Float64Array.from({ length: 64 }, (_, t) => t % 2)]) {
       const made = same((k) =>
