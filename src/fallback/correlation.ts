@@ -27,8 +27,7 @@ export function correlationCounts(input: CorrelationInput): CorrelationCounts {
       pairs++;
       let largest = 0;
       for (let d = 0, at = t, row = 0; d < dimensions; d++, at += delay, row += CLASSES) {
-        const c = classes[at]!;
-        if (c > largest) largest = c;
+        largest = Math.max(largest, classes[at]!);
         cells[row + largest]!++;
       }
     }
@@ -53,8 +52,7 @@ export function correlationCountsFrom(input: CorrelationInput, references: Int32
       let largest = 0;
       for (let d = 0, shift = 0, row = 0; d < dimensions; d++, shift += delay, row += CLASSES) {
         difference[0] = series[t + shift]! - series[reference + shift]!;
-        const c = classOf(words[HIGH_WORD]!, base);
-        if (c > largest) largest = c;
+        largest = Math.max(largest, classOf(words[HIGH_WORD]!, base));
         cells[row + largest]!++;
       }
     }

@@ -48,9 +48,9 @@ export function neighbourhoodDivergence(input: NeighbourhoodDivergenceInput): Di
 }
 
 /**
- * The data times a power of two that brings the largest magnitude to 1 … 2, and that power's exponent: exact,
- * and squares of differences neither overflow nor, unless 2^−511 of the largest magnitude, vanish.
- * Missing samples stay missing.
+ * The data divided by the power of two that brings the largest magnitude to 1 … 2, and that power's exponent:
+ * exact, and squares of differences cannot overflow. They vanish below 2^−537 of the largest magnitude, where
+ * distances over several offsets count as zero. Missing samples stay missing.
  */
 export function scaledData(data: Float64Array): { readonly data: Float64Array; readonly exponent: number } {
   let largest = 0;
@@ -154,8 +154,9 @@ class LogProducts {
 }
 
 /**
- * power · ln(product · 2^exponent) + count · dataExponent · ln 2 for each entry, 0 for an empty product. The product
- * is brought to 1 … 2 first, so that the bits do not depend on when a backend moved powers of two.
+ * power · ln(product · 2^exponent) + count · dataExponent · ln 2 for each entry, 0 for an empty product. `power`
+ * is 1, or ½ where the factors are squares. The product is brought to 1 … 2 first, so that the bits do not
+ * depend on when a backend moved powers of two.
  */
 export function sumsOf(
   products: Float64Array,
@@ -168,7 +169,9 @@ export function sumsOf(
   const logSums = products.map((product, i) => {
     const own = (words[2 * i + HIGH_WORD]! >> 20) - 1023;
     const mantissa = product * powerOfTwo(-own);
-    return power * (log(mantissa) + (exponents[i]! + own) * Math.LN2) + counts[i]! * dataExponent * Math.LN2;
+    // Powers of two are added up exactly, before they meet a logarithm.
+    const twos = power * (exponents[i]! + own) + counts[i]! * dataExponent;
+    return power * log(mantissa) + twos * Math.LN2;
   });
   return { logSums, counts };
 }
