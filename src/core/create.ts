@@ -13,13 +13,14 @@ import { instantiate } from './wasm.ts';
 /** Which build runs, with its compiled module; plain data that can be sent to workers. */
 export interface BackendModule {
   readonly backend: BackendName;
-  readonly module: WebAssembly.Module | null;
+  /** A compiled `WebAssembly.Module`; typed as object, so that the types need no DOM library. */
+  readonly module: object | null;
 }
 
 /** Kernels of a loaded backend. Synchronous: what a worker calls. */
 export function createKernels({ backend, module }: BackendModule): Kernels {
   if (module === null) return validated(createFallback());
-  const context = instantiate(module);
+  const context = instantiate(module as WebAssembly.Module);
   return validated({
     backend,
     ...createDelays(context),
