@@ -25,6 +25,8 @@ export const measurableLimit = (samples: number): number => 2 * log10(samples);
 const WIDER = 4;
 /** A slope that changes by more than this share under a wider exclusion, or is nearer to noise's than this, is refused. */
 const SAME = 0.1;
+/** A dimension known to less than a third says nothing. */
+const LARGEST_WIDTH = 1 / 3;
 /** Samples and reference points of the surrogate. */
 const TWIN_SAMPLES = 16_384;
 const TWIN_REFERENCES = 800;
@@ -96,6 +98,13 @@ function dimensionFinding(sums: LogSums, search: ScalingSearch, region: ScalingR
   takens /= region.lastDimension - region.firstDimension + 1;
   const sampling = STUDENT_90 * standardError;
   const width = Math.sqrt(sampling * sampling + STUDENT_90 * STUDENT_90 * spread * spread + bend * bend);
+  if (width > LARGEST_WIDTH * value)
+    return refusal(
+      'TOO_SHORT',
+      `The slope of the correlation sum is ${say(value)} but uncertain by ${say(width)}: too few independent returns to neighbouring states.`,
+      'Record longer, so that states return many times.',
+      { slope: value, width },
+    );
   return finding({
     value,
     // Two estimators that disagree say that the region is not clean: the interval holds both.

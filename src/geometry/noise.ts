@@ -10,7 +10,7 @@ import {
 } from './difference-regression.ts';
 import { LEVEL, LogSums, STUDENT_90 } from './log-sums.ts';
 import { type FloorEstimate, floorLevel } from './noise-floor.ts';
-import { BLOCKS, setUpSums, spreadStep } from './setup.ts';
+import { BLOCKS, setUpSums, spreadStep, spreadTarget } from './setup.ts';
 import { sumBlocks } from './sums.ts';
 import type { NoiseResult } from './types.ts';
 
@@ -45,7 +45,7 @@ export async function estimateNoise(
     references: SUM_REFERENCES,
     maximumDimension: SUM_DIMENSIONS,
   });
-  const regression = await byDifferences(record, reconstruction, compute);
+  const regression = await byDifferences(record, reconstruction, options.seed, compute);
   let floor: FloorEstimate = { kind: 'none' };
   if (!('ok' in setup)) {
     const blocks = await sumBlocks(setup, 0, compute);
@@ -67,12 +67,16 @@ export async function estimateNoise(
 async function byDifferences(
   record: PreparedRecord,
   reconstruction: Reconstruction,
+  seed: number,
   compute: Compute,
 ): Promise<DifferenceNoise | undefined> {
   const { delay, delaysPerChannel, theilerWindow } = reconstruction;
   const most = Math.max(1, Math.floor(MOST_COORDINATES / record.channelCount));
+  // On a lattice, neighbours coincide and have no gradient: spread here too.
+  const scaled = record.scaled.slice();
+  scaled.set(spreadTarget(record, seed), record.target * record.count);
   const all = delayVectors(
-    record,
+    { ...record, scaled },
     { delay: delay.samples, delaysPerChannel: Math.min(most, Math.max(2, delaysPerChannel)) },
     1,
   );
@@ -107,15 +111,22 @@ function combine(
   const std = record.stds[record.target]!;
   const unit = record.channelUnits[record.target] ?? '';
   const rounding = record.resolutionStep / Math.sqrt(12);
+  // The lattice was spread over ±q/2, which added a variance of q²/12.
+  const spread = spreadStep(record) / Math.sqrt(12);
+  const less = (x: number) => Math.sqrt(Math.max(0, x * x - spread * spread));
   const bracket =
     regression === undefined
       ? undefined
       : {
-          low: Math.sqrt(
-            Math.max(0, regression.unexplained - STUDENT_90 * regression.unexplainedError) /
-              (1 + regression.gradient),
+          low: less(
+            Math.sqrt(
+              Math.max(0, regression.unexplained - STUDENT_90 * regression.unexplainedError) /
+                (1 + regression.gradient),
+            ),
           ),
-          high: Math.sqrt(Math.max(0, regression.unexplained) + STUDENT_90 * regression.unexplainedError),
+          high: less(
+            Math.sqrt(Math.max(0, regression.unexplained) + STUDENT_90 * regression.unexplainedError),
+          ),
         };
   const evidence = {
     ...(regression && bracket
@@ -128,9 +139,6 @@ function combine(
     quantisation: rounding,
   };
   if (floor.kind === 'level') {
-    // The lattice was spread over ±q/2, which added a variance of q²/12.
-    const spread = spreadStep(record) / Math.sqrt(12);
-    const less = (x: number) => Math.sqrt(Math.max(0, x * x - spread * spread));
     const [low, value, high] = [less(floor.low), less(floor.value), less(floor.high)];
     if (bracket && (bracket.high < low || bracket.low > high))
       return refusal(
@@ -151,7 +159,7 @@ function combine(
       evidence: { ...evidence, fromDistances: value * std },
     });
   }
-  const bounds = [...(floor.kind === 'upper' ? [floor.high] : []), ...(bracket ? [bracket.high] : [])];
+  const bounds = [...(floor.kind === 'upper' ? [less(floor.high)] : []), ...(bracket ? [bracket.high] : [])];
   if (bounds.length === 0)
     return refusal(
       'TOO_SHORT',
