@@ -4,7 +4,7 @@ import { log10 } from '../base/elementary.ts';
 import type { Reconstruction } from '../reconstruct/types.ts';
 import { matchedStretch } from '../recording/stretch.ts';
 import type { PreparedRecord } from '../recording/types.ts';
-import { dimensionCurve, takensEstimate } from './curve.ts';
+import { dimensionCurve, OCTAVE, takensEstimate } from './curve.ts';
 import { correlationEntropy } from './entropy.ts';
 import { linearTwinTask } from './linear-twin.ts';
 import { LEVEL, LogSums, STUDENT_90 } from './log-sums.ts';
@@ -96,6 +96,12 @@ function dimensionFinding(sums: LogSums, search: ScalingSearch, region: ScalingR
     takens += takensEstimate(sums, 0, m, region.from, region.to) ?? value;
   }
   takens /= region.lastDimension - region.firstDimension + 1;
+  // Slopes that still rise over the dimensions that agree may not have arrived.
+  const rise = Math.max(
+    0,
+    sums.slope(0, region.lastDimension, region.from, region.to) -
+      sums.slope(0, region.firstDimension, region.from, region.to),
+  );
   const sampling = STUDENT_90 * standardError;
   const width = Math.sqrt(sampling * sampling + STUDENT_90 * STUDENT_90 * spread * spread + bend * bend);
   if (width > LARGEST_WIDTH * value)
@@ -109,7 +115,7 @@ function dimensionFinding(sums: LogSums, search: ScalingSearch, region: ScalingR
     value,
     // Two estimators that disagree say that the region is not clean: the interval holds both.
     low: Math.max(0, Math.min(value - width, takens)),
-    high: Math.max(value + width, takens),
+    high: Math.max(value + Math.sqrt(width * width + rise * rise), takens),
     level: LEVEL,
     unit: '1',
     method: METHOD,
@@ -119,6 +125,7 @@ function dimensionFinding(sums: LogSums, search: ScalingSearch, region: ScalingR
       standardError,
       spread,
       bend,
+      rise,
       takens,
       admissibleRegions: search.admissible.length,
     },
@@ -186,26 +193,23 @@ async function likeLinearNoise(
     seed,
   });
   const twin = new LogSums(blocks, dimensions, smallestExponent);
-  // Radii that both have pairs for, in the dimensions that agree.
-  const from = Math.max(region.from, firstEdge(twin, region.firstDimension));
-  if (region.to - from < 4) return null;
-  let nearest = Number.POSITIVE_INFINITY;
-  let ofTwin = 0;
-  let own = 0;
-  for (let m = region.firstDimension; m <= region.lastDimension; m++) {
-    if (firstEdge(twin, m) > from) break;
-    own = sums.slope(0, m, from, region.to);
-    ofTwin = twin.slope(0, m, from, region.to);
-    nearest = ofTwin - own;
-  }
+  // The largest dimension in which both have pairs over an octave; in one dimension they are alike by construction.
+  let m = region.lastDimension;
+  const start = () => Math.max(region.from, firstEdge(twin, m));
+  while (m > 1 && region.to - start() < OCTAVE) m--;
+  // Noise that does not come that close at all is unlike the record.
+  if (m < 2) return null;
+  const from = start();
+  const own = sums.slope(0, m, from, region.to);
+  const ofTwin = twin.slope(0, m, from, region.to);
   const tolerance = Math.max(
     SAME * region.slope,
-    STUDENT_90 * twin.standardError((v) => twin.slope(v, region.firstDimension, from, region.to)),
+    STUDENT_90 * twin.standardError((v) => twin.slope(v, m, from, region.to)),
   );
-  if (nearest > tolerance) return null;
+  if (ofTwin - own > tolerance) return null;
   return refusal(
     'NO_SATURATION',
-    `A slope of ${say(own)} is shared by dimensions ${region.firstDimension} to ${region.lastDimension}, but linear noise with the same spectrum shows ${say(ofTwin)} there, and at smaller distances the slope grows with the embedding.`,
+    `A slope of ${say(own)} is shared by dimensions ${region.firstDimension} to ${region.lastDimension}, but linear noise with the same spectrum shows ${say(ofTwin)} in ${m}, and at smaller distances the slope grows with the embedding.`,
     'A less noisy or longer record may show whether the growth is the sensor’s noise or the motion’s own.',
     { slope: own, surrogate: ofTwin },
   );

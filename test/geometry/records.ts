@@ -78,14 +78,35 @@ export function kaplanYorke(count: number, seed = 1, alpha = 0.2): Float64Array 
   return out;
 }
 
-/** Points of the middle-third Cantor set in random order: sums of random digits 0 or 2 over powers of 3. */
+/**
+ * Random walk on the middle-third Cantor set, x' = (x + 2·digit)/3 with random digits: the past is a function of the
+ * present point (its digits), so the delay vectors of every dimension lie on a copy of the set.
+ */
 export function cantor(count: number, seed = 1): Float64Array {
   const random = createRandom(seed, 902);
-  return Float64Array.from({ length: count }, () => {
-    let x = 0;
-    for (let d = 0; d < 30; d++) x = (x + 2 * random.integer(2)) / 3;
-    return x;
-  });
+  let x = 0;
+  const out = new Float64Array(count);
+  for (let i = -40; i < count; i++) {
+    x = (x + 2 * random.integer(2)) / 3;
+    if (i >= 0) out[i] = x;
+  }
+  return out;
+}
+
+/**
+ * x + 0.7·y² of the same game on the Sierpiński triangle (0,0), (1,0), (0,1): half-way to a random corner. (A linear
+ * combination of x and y would be a game of its own on a line.)
+ */
+export function sierpinski(count: number, seed = 1): Float64Array {
+  const random = createRandom(seed, 904);
+  let [x, y] = [0, 0];
+  const out = new Float64Array(count);
+  for (let i = -60; i < count; i++) {
+    const corner = random.integer(3);
+    [x, y] = [(x + (corner === 1 ? 1 : 0)) / 2, (y + (corner === 2 ? 1 : 0)) / 2];
+    if (i >= 0) out[i] = x + 0.7 * y * y;
+  }
+  return out;
 }
 
 export function white(count: number, seed: number, std = 1): Float64Array {
