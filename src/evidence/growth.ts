@@ -1,157 +1,219 @@
 import type { Compute } from '../base/compute.ts';
 import { defineTask } from '../base/compute.ts';
-import { estimateDivergence } from '../divergence/largest.ts';
+import { log } from '../base/elementary.ts';
+import type { Kernels } from '../base/kernels.ts';
 import type { DivergenceResult } from '../divergence/types.ts';
-import type { LeadTimeResult } from '../forecast/types.ts';
-import type { NoiseResult } from '../geometry/types.ts';
+import { forecastErrorTask } from '../forecast/error.ts';
 import type { Reconstruction } from '../reconstruct/types.ts';
 import type { PreparedRecord } from '../recording/types.ts';
 import { type EvidenceLine, neutral, short } from './line.ts';
-import { makeSurrogate } from './null-test.ts';
-import { matchedStretch } from './stretch.ts';
+import { type LocalExponent, type LocalExponentInput, localExponentTask } from './local-exponent.ts';
+import { reordered } from './normal-scores.ts';
+import { makeSurrogate, undistorted } from './null-test.ts';
+import { forecastShape } from './regular-motion.ts';
+import { longestStretch, surrogateStretch } from './stretch.ts';
 import type { Reason } from './types.ts';
 
-/** Surrogates whose growth is compared: with none of 9 growing as fast, p ≤ 0.1, beside the null test's own level. */
+/** Surrogates whose growth is compared; none of 9 reaching the record's is p = 0.1, beside the null test's own level. */
 const SURROGATES = 9;
-const REFERENCES = 1000;
-/** Forecast error must rise by this factor from the first lead to the last: less is not loss of skill. */
-const SKILL_LOSS = 2;
+/** Numbers beyond those of the null test: independent of it. */
+const FIRST_NUMBER = 10_000;
+/**
+ * Growth over one cycle below which it does not count: e^0.05, a doubling in 14 cycles. Local fits lean by
+ * about as much where the motion is regular (exponent 0) and the record shows a few hundred cycles.
+ */
+const LEAST_PER_CYCLE = 0.05;
+/** Where the growth has had time to fill the attractor, forecasts know nothing: an error of the whole spread, and more. */
+const SKILL_LOST = 0.75;
+/** e-folds given to the growth beyond those from the one-step error to the size of the attractor. */
+const SPARE_FOLDS = 2;
+/** Forecasts that start as bad as this have no growth to show. */
+const LARGEST_START = 0.8;
+/** Share of local fits that must support a slope at all. */
+const LEAST_SUPPORT = 0.5;
 
 export interface Growth extends EvidenceLine {
-  readonly verdict: 'exponential' | 'none' | 'like-noise';
-  readonly skillFalls: boolean;
+  readonly verdict: 'exponential' | 'none' | 'like-noise' | 'unknown';
+  /** Lower end of the growth in standard errors above zero; 0 where unknown. */
+  readonly strength: number;
+  /** Growth per dominant cycle (per step of a map). */
+  readonly perCycle: number;
 }
 
-const surrogateTask = defineTask<{ values: Float64Array; seed: number; number: number }, Float64Array>(
-  'evidence.surrogate',
-  function* (kernels, input) {
-    return yield* makeSurrogate(kernels, input.values, input.seed, input.number);
+/** The same exponent of a surrogate, with the record's settings. */
+export const surrogateExponentTask = defineTask(
+  'evidence.surrogate-exponent',
+  function* (
+    kernels: Kernels,
+    input: LocalExponentInput & { readonly seed: number; readonly number: number },
+  ): Generator<number, LocalExponent | undefined, void> {
+    const { seed, number, ...shape } = input;
+    // Surrogates of the undistorted record, seen through the distortion again.
+    const { values, undone } = undistorted(input.series);
+    const surrogate = yield* makeSurrogate(kernels, values, seed, number);
+    const series = undone ? reordered(input.series, surrogate) : surrogate;
+    return yield* localExponentTask.run(kernels, { ...shape, series });
   },
 );
 
-export const GROWTH_TASKS = [surrogateTask] as const;
-
-/** Do small differences grow exponentially, faster than in linear noise, and does forecast skill fall with lead? */
+/**
+ * Does the rule behind the record make small differences grow, by an amount that its length makes
+ * certain, faster than in linear noise, and do forecasts lose their skill when that growth says so?
+ * @param rest spread that is left for irregular motion, in standard deviations
+ */
 export async function examineGrowth(
   record: PreparedRecord,
   reconstruction: Reconstruction,
   divergence: DivergenceResult,
-  noise: NoiseResult,
-  leadTime: LeadTimeResult,
+  rest: number,
+  compare: boolean,
   seed: number,
   compute: Compute,
 ): Promise<Growth> {
-  const { largest } = divergence;
-  const fall = skillFall(leadTime);
-  if (!largest.ok)
+  const series = longestStretch(record);
+  const shape: LocalExponentInput = {
+    series,
+    delay: reconstruction.delay.samples,
+    dimension: reconstruction.delaysPerChannel,
+    window: reconstruction.theilerWindow.samples,
+  };
+  const local = await compute.run(localExponentTask, shape);
+  if (local === undefined)
     return {
-      verdict: 'none',
-      skillFalls: fall.falls,
-      reasons: [neutral('NO_GROWTH', largest.why), ...fall.reasons],
-    };
-  if (!(largest.low > 0))
-    return {
-      verdict: 'none',
-      skillFalls: fall.falls,
+      verdict: 'unknown',
+      strength: 0,
+      perCycle: 0,
       reasons: [
-        {
-          code: 'GROWTH_NOT_SIGNIFICANT',
-          text: `The largest exponent's interval, ${short(largest.low)} to ${short(largest.high)} ${largest.unit}, does not exclude zero.`,
-          value: largest.value,
-          threshold: 0,
-          speaksFor: 'none',
-        },
-        ...fall.reasons,
+        neutral(
+          'GROWTH_NOT_MEASURED',
+          `The longest stretch without gaps (${series.length} samples) is too short to follow differences.`,
+        ),
       ],
     };
-  const rates = await surrogateRates(record, reconstruction, noise, seed, compute);
-  const asFast = rates.filter((rate) => rate >= largest.value).length;
+  const { mean, error } = blockMean(local.blocks);
+  // Student's t: one-sided 99 % with the blocks' degrees of freedom.
+  const low = mean - student99(local.blocks.length - 1) * error;
+  const cycle = reconstruction.dynamics === 'map' ? 1 : (record.quality.samplesPerCycle ?? 1);
+  const perTime = 1 / record.interval;
+  const grows =
+    low > 0 &&
+    mean * cycle > LEAST_PER_CYCLE &&
+    local.error < LARGEST_START &&
+    local.supported > LEAST_SUPPORT;
   const reasons: Reason[] = [
     {
-      code: asFast > 0 ? 'GROWTH_LIKE_NOISE' : 'EXPONENTIAL_GROWTH',
-      text:
-        `Small differences grow exponentially at ${short(largest.value)} ${largest.unit} (${short(largest.low)} to ${short(largest.high)}); ` +
-        (asFast > 0
-          ? `so do those of ${asFast} of ${SURROGATES} surrogates of linear noise.`
-          : `${rates.length === 0 ? 'none' : `${rates.length} of`} ${SURROGATES} surrogates of linear noise ${rates.length === 0 ? 'do' : 'grow too, all slower'}.`),
-      value: largest.value,
-      threshold: rates.length > 0 ? Math.max(...rates) : 0,
-      speaksFor: asFast > 0 ? 'noise' : 'chaotic',
+      code: grows ? 'DIFFERENCES_GROW' : 'DIFFERENCES_DO_NOT_GROW',
+      text: grows
+        ? `Locally fitted maps stretch small differences by ${short(mean * perTime)} (at least ${short(low * perTime)}) e-folds per ${record.timeUnit}.`
+        : `Locally fitted maps do not stretch small differences for certain: ${short(mean * perTime)} (at least ${short(low * perTime)}) e-folds per ${record.timeUnit}, from fits of which ${short(100 * local.supported)} % are supported and that miss by ${short(local.error)} standard deviations.`,
+      value: mean * perTime,
+      threshold: (LEAST_PER_CYCLE / cycle) * perTime,
+      interval: [low * perTime, (2 * mean - low) * perTime],
+      speaksFor: grows ? 'chaotic' : 'none',
+      assumes: `Fits over ${local.neighbours} neighbours; measurement noise flattens their slopes, so noisy chaos may show no growth. The value judges, it does not measure the exponent.`,
     },
-    ...fall.reasons,
   ];
-  return { verdict: asFast > 0 ? 'like-noise' : 'exponential', skillFalls: fall.falls, reasons };
+  if (divergence.largest.ok)
+    reasons.push({
+      code: 'NEIGHBOURS_DIVERGE',
+      text: `Neighbouring states part at ${short(divergence.largest.value)} ${divergence.largest.unit} (${short(divergence.largest.low)} to ${short(divergence.largest.high)}).`,
+      value: divergence.largest.value,
+      threshold: 0,
+      interval: [divergence.largest.low, divergence.largest.high],
+      speaksFor: divergence.largest.low > 0 ? 'chaotic' : 'none',
+    });
+  else reasons.push(neutral('NEIGHBOURS_DO_NOT_DIVERGE', divergence.largest.why));
+  const strength = error > 0 ? mean / error : 0;
+  const result = (verdict: Growth['verdict']): Growth => ({
+    verdict,
+    strength,
+    perCycle: mean * cycle,
+    reasons,
+  });
+  if (!grows || !compare) return result(grows ? 'exponential' : 'none');
+
+  const lost = await skillLost(record, reconstruction, series, mean, local.error, rest, compute);
+  reasons.push(lost.reason);
+  const rates = await surrogateRates(record, shape, seed, compute);
+  const largest = Math.max(...rates);
+  const above = rates.length > 0 && mean > largest;
+  reasons.push({
+    code: above ? 'GROWTH_BEYOND_NOISE' : 'GROWTH_LIKE_NOISE',
+    text: above
+      ? `The same fits on ${rates.length} surrogates of linear noise give at most ${short(largest * perTime)} e-folds per ${record.timeUnit}.`
+      : `Surrogates of linear noise seem to stretch differences as much (${short(largest * perTime)} e-folds per ${record.timeUnit}).`,
+    value: mean * perTime,
+    threshold: rates.length > 0 ? largest * perTime : null,
+    speaksFor: above ? 'chaotic' : 'noise',
+  });
+  return result(!above ? 'like-noise' : lost.lost ? 'exponential' : 'none');
 }
 
-/** Growth rates that the same estimator finds in surrogates; surrogates without exponential growth give none. */
 async function surrogateRates(
   record: PreparedRecord,
-  reconstruction: Reconstruction,
-  noise: NoiseResult,
+  shape: LocalExponentInput,
   seed: number,
   compute: Compute,
 ): Promise<number[]> {
-  const stretch = matchedStretch(record);
-  if (stretch === null) return [];
-  const from = record.target * record.count + stretch.start;
-  const values = record.scaled.slice(from, from + stretch.count);
-  const series = await compute.map(
-    surrogateTask,
-    // Numbers beyond those of the null test: independent of it.
-    Array.from({ length: SURROGATES }, (_, i) => ({ values, seed, number: 10_000 + i })),
+  const found = surrogateStretch(record);
+  if (found === null) return [];
+  const series = found.values;
+  const results = await compute.map(
+    surrogateExponentTask,
+    Array.from({ length: SURROGATES }, (_, i) => ({
+      ...shape,
+      series,
+      seed,
+      number: FIRST_NUMBER + i,
+    })),
   );
-  const rates: number[] = [];
-  for (const scaled of series) {
-    const result = await estimateDivergence(
-      asRecord(record, scaled),
-      { ...reconstruction, embeddingDimension: reconstruction.delaysPerChannel },
-      { references: REFERENCES, seed, noise: noise.level },
-      compute,
-    );
-    if (result.largest.ok && result.largest.low > 0) rates.push(result.largest.value);
-  }
-  return rates;
+  return results.flatMap((r) => (r === undefined ? [] : [blockMean(r.blocks).mean]));
 }
 
-/** A single-channel record of a surrogate, in the original's units. */
-function asRecord(record: PreparedRecord, scaled: Float64Array): PreparedRecord {
-  const { target } = record;
+/**
+ * Forecast error at the lead at which the growth must have filled the attractor. Motion that only looks
+ * stretching in places (strange but not chaotic, several tones) keeps its forecasts.
+ */
+async function skillLost(
+  record: PreparedRecord,
+  reconstruction: Reconstruction,
+  series: Float64Array,
+  rate: number,
+  start: number,
+  rest: number,
+  compute: Compute,
+): Promise<{ readonly lost: boolean; readonly reason: Reason }> {
+  // An error below a thousandth counts as that: the nearest recorded state is no closer.
+  const folds = log(1 / Math.max(1e-3, start)) + SPARE_FOLDS;
+  const lead = Math.max(1, Math.min(Math.floor(series.length / 4), Math.ceil(folds / rate)));
+  const { error } = await compute.run(forecastErrorTask, { ...forecastShape(series, reconstruction), lead });
+  if (error === null)
+    return { lost: false, reason: neutral('SKILL_NOT_MEASURED', 'Too few forecasts can be compared.') };
+  const lost = error >= SKILL_LOST * rest;
   return {
-    ...record,
-    count: scaled.length,
-    scaled,
-    present: new Uint8Array(scaled.length).fill(1),
-    segments: [{ start: 0, end: scaled.length }],
-    channelCount: 1,
-    target: 0,
-    means: [record.means[target]!],
-    stds: [record.stds[target]!],
-    channelUnits: [record.channelUnits[target]!],
-    missing: 0,
+    lost,
+    reason: {
+      code: lost ? 'SKILL_FALLS' : 'SKILL_STAYS',
+      text: `After ${short(lead * record.interval)} ${record.timeUnit}, when this growth must have used up the forecast, its error is ${short(error)} standard deviations (lines apart, the record spreads over ${short(rest)})${lost ? '' : ': the forecast still knows something, so the growth is not real'}.`,
+      value: error,
+      threshold: SKILL_LOST * rest,
+      speaksFor: lost ? 'chaotic' : 'none',
+      assumes: 'Forecasts by the mean of the nearest states.',
+    },
   };
 }
 
-function skillFall(leadTime: LeadTimeResult): {
-  readonly falls: boolean;
-  readonly reasons: readonly Reason[];
-} {
-  const first = leadTime.curve[0];
-  const last = leadTime.curve.at(-1);
-  if (!first || !last || !(first.rms > 0))
-    return { falls: false, reasons: [neutral('NO_FORECAST', 'No forecast error could be measured.')] };
-  const factor = last.rms / first.rms;
-  const skill = first.rms / first.climatology;
-  const falls = factor >= SKILL_LOSS && skill < 1;
-  return {
-    falls,
-    reasons: [
-      {
-        code: falls ? 'SKILL_FALLS' : 'SKILL_DOES_NOT_FALL',
-        text: `The forecast's error grows ${short(factor)} times from the first lead to the last, starting at ${short(skill)} of climatology's.`,
-        value: factor,
-        threshold: SKILL_LOSS,
-        speaksFor: falls ? 'chaotic' : 'none',
-      },
-    ],
-  };
+function blockMean(blocks: readonly number[]): { readonly mean: number; readonly error: number } {
+  const n = blocks.length;
+  const mean = blocks.reduce((s, b) => s + b, 0) / n;
+  const squares = blocks.reduce((s, b) => s + (b - mean) * (b - mean), 0);
+  return { mean, error: Math.sqrt(squares / (n - 1) / n) };
+}
+
+/** One-sided 99 % quantile of Student's t: expansion about the normal's 2.326 (Abramowitz & Stegun 1964, 26.7.5). */
+function student99(freedom: number): number {
+  const z = 2.3263478740408408;
+  const z3 = z * z * z;
+  const z5 = z3 * z * z;
+  return z + (z3 + z) / (4 * freedom) + (5 * z5 + 16 * z3 + 3 * z) / (96 * freedom * freedom);
 }

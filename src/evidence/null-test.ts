@@ -1,22 +1,37 @@
 import { type Refusal, refusal } from '../base/answer.ts';
 import { type Compute, defineTask } from '../base/compute.ts';
+import type { Kernels } from '../base/kernels.ts';
 import { createRandom } from '../base/random.ts';
-import { forecastErrorTask } from '../forecast/error.ts';
 import type { Reconstruction } from '../reconstruct/types.ts';
+import { amplitudeAdjustedSurrogate } from '../recording/surrogate.ts';
 import type { PreparedRecord } from '../recording/types.ts';
-import { matchedStretch } from './stretch.ts';
+import { forecastStatistic, type StatisticShape } from './forecast-statistic.ts';
+import { normalScores } from './normal-scores.ts';
+import { surrogateStretch } from './stretch.ts';
 import type { NullTestOptions, NullTestResult } from './types.ts';
 
-/** One-sided level of the default 39 surrogates: smallest p = 1/40. */
+/** One-sided level of the default 39 surrogates: smallest p = 1/40. Fewer can only reject at 1/(n + 1). */
 export const NULL_LEVEL = 0.025;
+export const DEFAULT_SURROGATES = 39;
 /** Iterations of a surrogate at most; most stop earlier because the ranks no longer change. */
 const ITERATIONS = 100;
-/** Forecast origins per series: the error's relative sampling error is then about 3 %. */
-const ORIGINS = 1000;
-/** Largest embedding of the statistic: in more dimensions surrogates and record are equally unpredictable. */
-const MOST_COORDINATES = 6;
+/** Fewer samples leave fewer than a hundred forecasts that share nothing with their neighbours. */
+const FEWEST_SAMPLES = 200;
+/** Coordinates of the statistic: enough for a plane and the direction of motion through it. */
+const COORDINATES = 3;
 
-interface SurrogateErrorInput {
+/** Iterative amplitude-adjusted surrogate number `number` ≥ 1 of a stretch: its own substream of the seed. */
+export function* makeSurrogate(
+  kernels: Kernels,
+  values: Float64Array,
+  seed: number,
+  number: number,
+): Generator<number, Float64Array, void> {
+  const permutation = createRandom(seed, number).permutation(values.length);
+  return yield* amplitudeAdjustedSurrogate(kernels, values, permutation, ITERATIONS);
+}
+
+export interface SurrogateErrorInput {
   readonly values: Float64Array;
   /** 0: the record itself. */
   readonly number: number;
@@ -24,58 +39,71 @@ interface SurrogateErrorInput {
   readonly shape: StatisticShape;
 }
 
-/** How the forecast error is measured, the same for record and surrogates. */
-export interface StatisticShape {
-  readonly delay: number;
-  readonly dimension: number;
-  readonly window: number;
-  readonly lead: number;
-  readonly references: number;
-}
-
-/** Iterative amplitude-adjusted surrogate number `number` of a stretch (substream of the seed). */
-export function* makeSurrogate(
-  kernels: Parameters<typeof forecastErrorTask.run>[0],
-  values: Float64Array,
-  seed: number,
-  number: number,
-): Generator<number, Float64Array, void> {
-  yield 0;
-  const permutation = createRandom(seed, number).permutation(values.length);
-  return kernels.surrogate({ values, permutation, iterations: ITERATIONS }).values;
-}
-
-/** Nonlinear forecast error of the record or of one surrogate. */
-export const surrogateErrorTask = defineTask<SurrogateErrorInput, number | null>(
+/** Nonlinear forecast error of the record or of one surrogate; null when too few forecasts can be made. */
+export const surrogateErrorTask = defineTask(
   'evidence.surrogate-error',
-  function* (kernels, input) {
-    const series =
-      input.number === 0
-        ? input.values
-        : yield* makeSurrogate(kernels, input.values, input.seed, input.number);
-    const { error } = yield* forecastErrorTask.run(kernels, { series, ...input.shape });
-    return error;
+  function* (kernels: Kernels, input: SurrogateErrorInput): Generator<number, number | null, void> {
+    const { values, number, seed, shape } = input;
+    if (number === 0) return yield* forecastStatistic(kernels, values, shape);
+    const surrogate = yield* makeSurrogate(kernels, values, seed, number);
+    yield 0.5;
+    return yield* forecastStatistic(kernels, surrogate, shape);
   },
 );
 
-/** Shape of the statistic: the record's own reconstruction, one correlation time ahead at most. */
-export function statisticShape(reconstruction: Reconstruction): StatisticShape {
-  const { delay, delaysPerChannel, theilerWindow, correlationTime } = reconstruction;
+/**
+ * Shape of the statistic. It may depend on what record and surrogates have in common, the autocorrelation,
+ * and on nothing else: a shape chosen for the record's own forecast would favour the record. Half a
+ * correlation time between coordinates, and as far ahead: there linear correlation alone forecasts badly.
+ */
+export function statisticShape({ correlationTime }: Pick<Reconstruction, 'correlationTime'>): StatisticShape {
+  const half = Math.max(1, Math.round(correlationTime.samples / 2));
   return {
-    delay: delay.samples,
-    dimension: Math.min(MOST_COORDINATES, Math.max(2, delaysPerChannel)),
-    window: theilerWindow.samples,
-    // Far enough that linear correlation alone forecasts badly, near enough that determinism still shows.
-    lead: Math.max(1, Math.min(delay.samples, correlationTime.samples)),
-    references: ORIGINS,
+    delay: half,
+    dimension: COORDINATES,
+    window: Math.max(correlationTime.samples, (COORDINATES - 1) * half),
+    lead: half,
   };
+}
+
+/** Beyond these the distribution is taken to be a distortion: a Gaussian record of 30 independent values has them by chance in 1 of 20. */
+const SKEWED = 0.7;
+const LONG_TAILED = 1.5;
+
+/**
+ * Surrogates keep the spectrum of what they are made from, so a distorted Gaussian process must have its
+ * distortion undone first (Theiler et al. 1992): the spectrum of the distorted values is not one that any
+ * Gaussian process seen through the same function has (Kugiumtzis 1999, Phys. Rev. E 60, 2808). But a
+ * distribution with short tails is also what few cycles of an undistorted narrow-band process show, and
+ * undoing what is not there would distort it. Both cases share the distribution with their surrogates,
+ * so the choice favours neither.
+ */
+export function undistorted(values: Float64Array): {
+  readonly values: Float64Array;
+  readonly undone: boolean;
+} {
+  const n = values.length;
+  let mean = 0;
+  for (let t = 0; t < n; t++) mean += values[t]! / n;
+  let [two, three, four] = [0, 0, 0];
+  for (let t = 0; t < n; t++) {
+    const d = values[t]! - mean;
+    two += (d * d) / n;
+    three += (d * d * d) / n;
+    four += (d * d * d * d) / n;
+  }
+  const skewness = two > 0 ? three / (two * Math.sqrt(two)) : 0;
+  const excess = two > 0 ? four / (two * two) - 3 : 0;
+  const undone = Math.abs(skewness) > SKEWED || excess > LONG_TAILED;
+  return { values: undone ? normalScores(values) : values, undone };
 }
 
 /**
  * Surrogate test of the null hypothesis that the record is a stationary linear Gaussian process seen
- * through a static monotone function (Theiler et al. 1992, Physica D 58, 77; Schreiber & Schmitz 1996).
- * Statistic: nonlinear out-of-sample forecast error, the most powerful of several (Schreiber & Schmitz
- * 1997, Phys. Rev. E 55, 5443); one-sided, since determinism makes it small.
+ * through a static monotone function (Theiler et al. 1992, Physica D 58, 77; Schreiber & Schmitz 1996, Phys.
+ * Rev. Lett. 77, 635). Statistic: nonlinear out-of-sample forecast error, the most powerful of several
+ * (Schreiber & Schmitz 1997, Phys. Rev. E 55, 5443); one-sided, since determinism makes it small. Rejection
+ * alone is not chaos: changing variance, nonlinear noise and noninvertible distortions reject it too.
  */
 export async function nullTest(
   record: PreparedRecord,
@@ -83,42 +111,47 @@ export async function nullTest(
   options: NullTestOptions & { readonly seed: number },
   compute: Compute,
 ): Promise<NullTestResult | Refusal> {
-  const surrogates = options.surrogates ?? 39;
-  const stretch = matchedStretch(record);
-  if (stretch === null || stretch.count < 200)
+  const surrogates = options.surrogates ?? DEFAULT_SURROGATES;
+  const found = surrogateStretch(record);
+  if (found === null || found.stretch.count < FEWEST_SAMPLES)
     return refusal(
       'TOO_SHORT',
-      `The longest stretch without gaps has ${stretch?.count ?? 0} usable samples; the surrogate test takes at least 200.`,
+      `The longest stretch without gaps has ${found?.stretch.count ?? 0} usable samples; the surrogate test takes at least ${FEWEST_SAMPLES}.`,
       'Record longer, or without gaps.',
-      { samples: stretch?.count ?? 0 },
+      { samples: found?.stretch.count ?? 0, needed: FEWEST_SAMPLES },
     );
-  const from = record.target * record.count + stretch.start;
-  const values = record.scaled.slice(from, from + stretch.count);
+  const { stretch } = found;
+  const { values, undone } = undistorted(found.values);
   const shape = statisticShape(reconstruction);
   const errors = await compute.map(
     surrogateErrorTask,
     Array.from({ length: surrogates + 1 }, (_, number) => ({ values, number, seed: options.seed, shape })),
   );
-  const [own, ...others] = errors;
-  if (own === null || own === undefined || others.some((e) => e === null))
+  const known = errors.filter((error): error is number => error !== null);
+  if (known.length < errors.length)
     return refusal(
       'TOO_SHORT',
-      `With ${stretch.count} samples and a decorrelation window of ${shape.window}, too few forecasts can be compared.`,
+      `With ${stretch.count} samples and correlations over ${shape.window} of them, too few independent forecasts can be compared.`,
       'Record longer.',
-      { samples: stretch.count },
+      { samples: stretch.count, window: shape.window },
     );
-  const list = others as number[];
-  const pValue = (1 + list.filter((e) => e <= own).length) / (surrogates + 1);
+  const [own, ...others] = known;
+  const pValue = rankPValue(own!, others);
+  const level = Math.max(NULL_LEVEL, 1 / (surrogates + 1));
   return {
     nullHypothesis: 'a stationary linear Gaussian process seen through a static monotone function',
     statistic: 'nonlinear forecast error, relative to the standard deviation',
-    record: own,
-    surrogates: list,
+    record: own!,
+    surrogates: others,
     pValue,
-    level: NULL_LEVEL,
-    rejected: pValue <= NULL_LEVEL,
-    method:
-      'iterative amplitude-adjusted surrogates (Schreiber & Schmitz 1996), ends matched, one-sided rank test (Theiler et al. 1992)',
+    level,
+    rejected: pValue <= level,
+    method: `iterative amplitude-adjusted surrogates (Schreiber & Schmitz 1996)${undone ? ' of the values brought to a normal distribution' : ''}, ends matched, one-sided rank test (Theiler et al. 1992); locally linear forecasts ${shape.lead} samples ahead`,
     stretch,
   };
+}
+
+/** One-sided rank p-value of a small statistic: (1 + surrogates at least as small) / (surrogates + 1). */
+export function rankPValue(own: number, others: readonly number[]): number {
+  return (1 + others.filter((other) => other <= own).length) / (others.length + 1);
 }

@@ -1,84 +1,168 @@
 import type { Compute } from '../base/compute.ts';
-import type { LeadTimeResult } from '../forecast/types.ts';
+import { forecastErrorTask } from '../forecast/error.ts';
+import type { Reconstruction } from '../reconstruct/types.ts';
 import type { PreparedRecord } from '../recording/types.ts';
+import { baseFrequencies } from './base-frequencies.ts';
 import { type EvidenceLine, neutral, short } from './line.ts';
-import { baseFrequency, lineSpectrumTask } from './lines.ts';
-import { LONGEST_STRETCH, smoothLengths } from './stretch.ts';
+import { spectralLinesTask } from './spectral-lines.ts';
+import { longestStretch } from './stretch.ts';
 import type { Reason } from './types.ts';
+import { zeroOneTask } from './zero-one.ts';
 
-/** Share of variance in sharp lines above which motion counts as regular: the rest may be 20 % noise (4 % of variance) and more. */
-const LINE_SHARE = 0.9;
-/** Below this, what is left over is most of the record, so it is not regular motion with some noise. */
-const SOME_LINES = 0.5;
+/** Less than half of the variance in lines is a record that is mostly something else. */
+const MOSTLY_LINES = 0.5;
 /**
- * Forecast error far ahead, in standard deviations, below which errors have stopped growing short of the
- * attractor: chaos and noise end near 1 (independent states differ by √2 of it, the mean by 1).
+ * With all but 3 % in lines the rest is too little to tell noise from irregular motion by what a forecast
+ * loses (chaos can lose twice the rest); if differences do not grow either, the lines decide.
  */
-const STAYS_GOOD = 0.5;
+const ALL_LINES = 0.97;
+/**
+ * Variance that a forecast may lose between one step and a quarter of the record and still be called lasting.
+ * Noise on a regular motion loses none; 2 % is what the distance to the nearest recorded state leaves.
+ */
+const LASTING = 0.02;
+/** … and two standard errors of a mean square of 1,000 forecasts, relative to the short forecast's own. */
+const SAMPLING = 0.1;
+/** Neighbours averaged by the forecasts here: few, so that recurrences are followed closely. */
+const NEIGHBOURS = 8;
+const ORIGINS = 1000;
+/** 0–1 test: below, regular; above 1 minus this, irregular (Gottwald & Melbourne 2009 find both ends well apart by 1,000 samples). */
+const REGULAR_SCORE = 0.2;
+
+/** Below this the surroundings in which a line is judged are the whole spectrum. */
+const FEWEST_SAMPLES = 256;
 
 export interface RegularMotion extends EvidenceLine {
   readonly kind: 'periodic' | 'quasiperiodic' | null;
   readonly lineShare: number;
+  /** Spread left when sharp and broad lines are taken out, in standard deviations: what chaos must lose. */
+  readonly rest: number;
+  /** Variance forgotten between a short and a long lead; null when not measured. */
+  readonly forgotten: number | null;
 }
 
-/** Do a few sharp lines make up the record, and does the forecast stay good however far ahead? */
+/**
+ * Regular motion: a few sharp lines hold the record, and what the record was still tells what it will be
+ * after any time. Noise on top of it (the sensor's, say) is allowed: it does not grow with the lead.
+ */
 export async function findRegularMotion(
   record: PreparedRecord,
-  leadTime: LeadTimeResult,
+  reconstruction: Reconstruction,
+  seed: number,
   compute: Compute,
 ): Promise<RegularMotion> {
-  const longest = record.segments.reduce((a, b) => (b.end - b.start > a.end - a.start ? b : a), {
-    start: 0,
-    end: 0,
-  });
-  const available = Math.min(longest.end - longest.start, LONGEST_STRETCH);
-  const count = smoothLengths(1, available).at(-1) ?? 0;
-  if (count < 256)
+  const values = longestStretch(record);
+  if (values.length < FEWEST_SAMPLES)
     return {
       kind: null,
       lineShare: 0,
+      rest: 1,
+      forgotten: null,
       reasons: [
         neutral(
           'LINES_NOT_MEASURED',
-          `The longest stretch without gaps (${available} samples) is too short for a line spectrum.`,
+          `The longest stretch without gaps (${values.length} samples) is too short for a line spectrum.`,
         ),
       ],
     };
-  const from = record.target * record.count + longest.start;
-  const spectrum = await compute.run(lineSpectrumTask, { values: record.scaled.slice(from, from + count) });
+  const step = Math.max(1, reconstruction.correlationTime.samples);
+  const decorrelated = Float64Array.from(
+    { length: Math.floor(values.length / step) },
+    (_, i) => values[i * step]!,
+  );
+  const [spectrum, score] = await Promise.all([
+    compute.run(spectralLinesTask, { values }),
+    compute.run(zeroOneTask, { samples: decorrelated, seed }),
+  ]);
+  const rest = Math.sqrt(Math.max(0, 1 - Math.min(1, spectrum.share + spectrum.broadShare)));
+  const lined = spectrum.share >= MOSTLY_LINES;
+  const lasting = lined ? await measureForgetting(values, reconstruction, compute) : null;
+  const all = spectrum.share >= ALL_LINES;
+  const holds = all || (lasting !== null && lasting.forgotten <= LASTING + SAMPLING * lasting.near);
+  const { bases } = baseFrequencies(spectrum.lines, values.length);
+  const kind = lined && holds ? (bases.length > 1 ? 'quasiperiodic' : 'periodic') : null;
 
-  const curve = leadTime.curve;
-  const last = curve.at(-1);
-  const std = record.stds[record.target]!;
-  const farError = last ? last.rms / std : null;
-  const staysGood = farError !== null && farError < STAYS_GOOD;
-  const lined = spectrum.share >= LINE_SHARE;
-  const base = baseFrequency(spectrum);
-  const kind = lined && staysGood ? (base === null ? 'quasiperiodic' : 'periodic') : null;
-
-  const reasons: Reason[] = [
-    {
-      code: 'LINE_SPECTRUM',
-      text: lined
-        ? `${short(spectrum.share * 100)} % of the variance lies in ${spectrum.lines.length} sharp spectral ${spectrum.lines.length === 1 ? 'line' : 'lines'}, ${base === null ? 'which are not multiples of one frequency' : `all multiples of ${short(base / record.interval)} per ${record.timeUnit}`}.`
-        : `Sharp spectral lines hold ${short(spectrum.share * 100)} % of the variance; regular motion needs ${LINE_SHARE * 100} %.`,
-      value: spectrum.share,
-      threshold: LINE_SHARE,
-      speaksFor: lined ? (base === null ? 'quasiperiodic' : 'periodic') : 'none',
-    },
-  ];
-  if (farError !== null)
+  const reasons: Reason[] = [lineReason(record, spectrum.share, spectrum.lines.length, bases, kind)];
+  if (lasting !== null)
     reasons.push({
-      code: 'FAR_FORECAST',
-      text: staysGood
-        ? `A forecast ${short(last!.lead)} ${record.timeUnit} ahead is still off by only ${short(farError)} standard deviations: errors do not keep growing.`
-        : `A forecast ${short(last!.lead)} ${record.timeUnit} ahead is off by ${short(farError)} standard deviations.`,
-      value: farError,
-      threshold: STAYS_GOOD,
-      speaksFor: staysGood ? (base === null ? 'quasiperiodic' : 'periodic') : 'none',
+      code: holds ? 'FORECAST_LASTS' : 'FORECAST_FADES',
+      text: `Between ${short(lasting.nearLead * record.interval)} and ${short(lasting.farLead * record.interval)} ${record.timeUnit} ahead the forecast loses ${short(100 * Math.max(0, lasting.forgotten))} % of the variance: ${holds ? 'what it knows, it keeps' : 'the record forgets'}.`,
+      value: lasting.forgotten,
+      threshold: LASTING + SAMPLING * lasting.near,
+      speaksFor: kind ?? 'none',
+      assumes: 'A quarter of the record is long enough for what will be forgotten to be forgotten.',
     });
-  return { kind, lineShare: spectrum.share, reasons };
+  if (score !== undefined)
+    reasons.push({
+      code: 'ZERO_ONE',
+      text: `The 0–1 test gives ${short(score)} (0: regular, 1: irregular, be it chaos or noise).`,
+      value: score,
+      threshold: REGULAR_SCORE,
+      speaksFor: score < REGULAR_SCORE && kind !== null ? kind : 'none',
+      assumes:
+        'Samples are a correlation time apart; noise on a regular motion raises the score, slow growth lowers it.',
+    });
+  else
+    reasons.push(
+      neutral(
+        'ZERO_ONE_NOT_MEASURED',
+        `The record holds ${decorrelated.length} correlation times; the 0–1 test needs 200.`,
+      ),
+    );
+  return {
+    kind,
+    lineShare: spectrum.share,
+    rest,
+    forgotten: lasting?.forgotten ?? null,
+    reasons,
+  };
 }
 
-/** Lines hold enough of the record that a chaotic call would contradict them. */
-export const mostlyLines = (motion: RegularMotion) => motion.lineShare >= SOME_LINES && motion.kind === null;
+async function measureForgetting(values: Float64Array, reconstruction: Reconstruction, compute: Compute) {
+  const nearLead = reconstruction.delay.samples;
+  const farLead = Math.max(nearLead + 1, Math.floor(values.length / 4));
+  const [near, far] = await compute.map(
+    forecastErrorTask,
+    [nearLead, farLead].map((lead) => ({ ...forecastShape(values, reconstruction), lead })),
+  );
+  if (near!.error === null || far!.error === null) return null;
+  const [a, b] = [near!.error * near!.error, far!.error * far!.error];
+  return { nearLead, farLead, near: a, forgotten: b - a };
+}
+
+/** Locally constant forecasts in the record's own state space (target channel alone). */
+export function forecastShape(series: Float64Array, reconstruction: Reconstruction) {
+  return {
+    series,
+    delay: reconstruction.delay.samples,
+    dimension: Math.max(2, reconstruction.delaysPerChannel),
+    window: Math.min(reconstruction.theilerWindow.samples, Math.floor(series.length / 10)),
+    neighbours: NEIGHBOURS,
+    references: ORIGINS,
+  };
+}
+
+function lineReason(
+  record: PreparedRecord,
+  share: number,
+  count: number,
+  bases: readonly number[],
+  kind: RegularMotion['kind'],
+): Reason {
+  const percent = short(100 * share);
+  const text =
+    count === 0
+      ? 'The spectrum has no sharp line.'
+      : `${percent} % of the variance lies in ${count} sharp spectral ${count === 1 ? 'line' : 'lines'}, ` +
+        (bases.length === 1
+          ? `all multiples of ${short(bases[0]! / record.interval)} per ${record.timeUnit}.`
+          : `which take ${bases.length} base frequencies to explain (${bases.map((b) => short(b / record.interval)).join(', ')} per ${record.timeUnit}).`);
+  return {
+    code: 'LINE_SPECTRUM',
+    text: share >= MOSTLY_LINES ? text : `${text} Regular motion needs ${100 * MOSTLY_LINES} % in lines.`,
+    value: share,
+    threshold: MOSTLY_LINES,
+    speaksFor: kind ?? 'none',
+    assumes: 'Frequencies hold still while the record lasts; phase-coherent chaos has strong lines too.',
+  };
+}

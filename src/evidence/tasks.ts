@@ -1,6 +1,14 @@
-import { GROWTH_TASKS } from './growth.ts';
-import { lineSpectrumTask } from './lines.ts';
+import { surrogateExponentTask } from './growth.ts';
+import { localExponentTask } from './local-exponent.ts';
 import { surrogateErrorTask } from './null-test.ts';
+import { spectralLinesTask } from './spectral-lines.ts';
+import { zeroOneTask } from './zero-one.ts';
 
 /** Tasks of this folder, for the workers' registry. */
-export const EVIDENCE_TASKS = [surrogateErrorTask, lineSpectrumTask, ...GROWTH_TASKS] as const;
+export const EVIDENCE_TASKS = [
+  surrogateErrorTask,
+  spectralLinesTask,
+  zeroOneTask,
+  localExponentTask,
+  surrogateExponentTask,
+] as const;

@@ -11,6 +11,10 @@ export interface Reason {
   readonly value: number | null;
   readonly threshold: number | null;
   readonly speaksFor: RegimeCall | 'none';
+  /** Ends of the interval of `value`, where it has one. */
+  readonly interval?: readonly [number, number];
+  /** What this piece of evidence takes for granted, or cannot see. */
+  readonly assumes?: string;
   readonly parameters?: MessageParameters;
 }
 
