@@ -83,18 +83,24 @@ function build({ kind, seed, length, m, targets, queries, k, gap }: Case): Local
   };
 }
 
+/**
+ * Cleveland 1979. 1 − u³ cancels at the farthest neighbour (u = 1 / 1.0001): a last bit of u is 10⁴ last bits of
+ * the weight. Evaluated as the kernels do, so that what is compared below is the fit and not that cancellation.
+ */
+function tricubeOf(u: number): number {
+  const v = 1 - u * u * u;
+  return v * v * v;
+}
+
 /** Neighbours of query q: weight, coordinates relative to the query, targets. */
 function sample({ vectors, targetOffsets, queries, neighbours, weights }: LocalFitInput, q: number) {
   const { data, starts, offsets } = vectors;
   const { k, indices, distances } = neighbours;
   const rows = Array.from(indices.subarray(q * k, (q + 1) * k)).filter((j) => j >= 0);
   const farthest = distances[q * k + rows.length - 1]!;
+  const tricube = weights === 'tricube' && farthest > 0;
   return rows.map((j, i) => ({
-    // Cleveland 1979; all alike where every neighbour coincides with the query.
-    w:
-      weights === 'uniform' || farthest === 0
-        ? 1
-        : (1 - (distances[q * k + i]! / (1.0001 * farthest)) ** 3) ** 3,
+    w: tricube ? tricubeOf(distances[q * k + i]! / (farthest * 1.0001)) : 1,
     x: Array.from(offsets, (o, d) => data[starts[j]! + o]! - queries[q * offsets.length + d]!),
     y: Array.from(targetOffsets, (o) => data[starts[j]! + o]!),
   }));
