@@ -19,6 +19,8 @@ export interface Evidence {
   readonly divergence: DivergenceResult;
   readonly dimension: DimensionResult;
   readonly count: number;
+  /** The record is long for its slowest movement (its stationarity could be judged). */
+  readonly settled: boolean;
 }
 
 export interface Decision {
@@ -42,7 +44,8 @@ const STANDS = 0.05;
  * 2. Sharp lines hold it and forecasts last, and no growth contradicts → `periodic` or `quasiperiodic`.
  * 3. `chaotic` needs all of: linear noise rejected; differences grow for certain, materially, faster than
  *    in surrogates; forecasts have lost their skill when that growth says so.
- * 4. `noise` needs: linear noise stands, no lines, no growth.
+ * 4. `noise` needs: linear noise stands in a record long enough to rule it out, no direction of time, no
+ *    lines, no growth.
  * 5. Everything else → `inconclusive`, with what would change it.
  *
  * Being wrong is worse than refusing, so lines that disagree never outvote each other.
@@ -103,6 +106,18 @@ export function decide(evidence: Evidence): Decision {
       'NULL_STANDS_WEAKLY',
       0.6,
       'Linear noise is not ruled out, but barely, or against signs of growth. A longer record or more surrogates would settle it.',
+    );
+  if (linear.directed)
+    return inconclusive(
+      'TIME_HAS_DIRECTION',
+      0.7,
+      'Forecasts do not tell the record from linear noise, but time has a direction in it, which linear noise has not. A longer record, or one reduced to events, may show the rule.',
+    );
+  if (!evidence.settled)
+    return inconclusive(
+      'TOO_FEW_CYCLES',
+      0.7,
+      'Linear noise is not ruled out, but the record is short for its slowest movement: that little could not rule it out. A record several times longer would settle it.',
     );
   return {
     call: 'noise',

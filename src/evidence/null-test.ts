@@ -39,17 +39,40 @@ export interface SurrogateErrorInput {
   readonly shape: StatisticShape;
 }
 
-/** Nonlinear forecast error of the record or of one surrogate; null when too few forecasts can be made. */
+export interface SurrogateStatistics {
+  /** Nonlinear forecast error; null when too few forecasts can be made. */
+  readonly error: number | null;
+  readonly asymmetry: number;
+}
+
+/** Both statistics of the record or of one surrogate. */
 export const surrogateErrorTask = defineTask(
   'evidence.surrogate-error',
-  function* (kernels: Kernels, input: SurrogateErrorInput): Generator<number, number | null, void> {
+  function* (kernels: Kernels, input: SurrogateErrorInput): Generator<number, SurrogateStatistics, void> {
     const { values, number, seed, shape } = input;
-    if (number === 0) return yield* forecastStatistic(kernels, values, shape);
-    const surrogate = yield* makeSurrogate(kernels, values, seed, number);
+    const series = number === 0 ? values : yield* makeSurrogate(kernels, values, seed, number);
     yield 0.5;
-    return yield* forecastStatistic(kernels, surrogate, shape);
+    const error = yield* forecastStatistic(kernels, series, shape);
+    return { error, asymmetry: timeAsymmetry(series, shape.lead) };
   },
 );
+
+/**
+ * Skewness of the differences over `lag` samples. A linear Gaussian process seen through any static function
+ * looks the same in both directions of time, so it is zero but for chance (Weiss 1975, J. Appl. Prob. 12, 831;
+ * Diks et al. 1995, Phys. Lett. A 201, 221).
+ */
+export function timeAsymmetry(series: Float64Array, lag: number): number {
+  let square = 0;
+  let cube = 0;
+  const n = series.length - lag;
+  for (let t = 0; t < n; t++) {
+    const d = series[t + lag]! - series[t]!;
+    square += (d * d) / n;
+    cube += (d * d * d) / n;
+  }
+  return square > 0 ? cube / (square * Math.sqrt(square)) : 0;
+}
 
 /**
  * Shape of the statistic. It may depend on what record and surrogates have in common, the autocorrelation,
@@ -123,12 +146,12 @@ export async function nullTest(
   const { stretch } = found;
   const { values, undone } = undistorted(found.values);
   const shape = statisticShape(reconstruction);
-  const errors = await compute.map(
+  const statistics = await compute.map(
     surrogateErrorTask,
     Array.from({ length: surrogates + 1 }, (_, number) => ({ values, number, seed: options.seed, shape })),
   );
-  const known = errors.filter((error): error is number => error !== null);
-  if (known.length < errors.length)
+  const known = statistics.map(({ error }) => error).filter((error): error is number => error !== null);
+  if (known.length < statistics.length)
     return refusal(
       'TOO_SHORT',
       `With ${stretch.count} samples and correlations over ${shape.window} of them, too few independent forecasts can be compared.`,
@@ -146,9 +169,20 @@ export async function nullTest(
     pValue,
     level,
     rejected: pValue <= level,
+    asymmetry: asymmetryTest(statistics.map(({ asymmetry }) => asymmetry)),
     method: `iterative amplitude-adjusted surrogates (Schreiber & Schmitz 1996)${undone ? ' of the values brought to a normal distribution' : ''}, ends matched, one-sided rank test (Theiler et al. 1992); locally linear forecasts ${shape.lead} samples ahead`,
     stretch,
   };
+}
+
+/** Two-sided rank test of the first value against the others. */
+function asymmetryTest([own, ...others]: readonly number[]): NullTestResult['asymmetry'] {
+  const smaller = rankPValue(own!, others);
+  const larger = rankPValue(
+    -own!,
+    others.map((other) => -other),
+  );
+  return { record: own!, surrogates: others, pValue: Math.min(1, 2 * Math.min(smaller, larger)) };
 }
 
 /** One-sided rank p-value of a small statistic: (1 + surrogates at least as small) / (surrogates + 1). */

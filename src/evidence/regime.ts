@@ -57,6 +57,7 @@ export async function callRegime(
     divergence: inputs.divergence,
     dimension: inputs.dimension,
     count: record.count,
+    settled: inputs.stationarity.verdict === 'stationary',
   });
   return {
     call: decision.call,

@@ -43,6 +43,16 @@ export interface NullTestResult {
   readonly level: number;
   readonly rejected: boolean;
   readonly method: string;
+  /**
+   * A second statistic, the skewness of differences (zero but for chance when time has no direction), with
+   * its two-sided rank p-value. It does not enter `rejected`, whose level is that of one test; a direction
+   * of time forbids a call of noise.
+   */
+  readonly asymmetry: {
+    readonly record: number;
+    readonly surrogates: readonly number[];
+    readonly pValue: number;
+  };
   /** Samples used after the ends were trimmed to match (start, count of the trimmed stretch). */
   readonly stretch: { readonly start: number; readonly count: number };
 }
