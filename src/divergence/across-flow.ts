@@ -15,6 +15,8 @@ const LOW = 2 ** -256;
  * @param first starts of the first members. Samples from `most + 1` before each vector's oldest coordinate to
  *   `steps + most + 1` after its time must exist.
  * @param most largest shift in samples
+ * @param blockStarts pairs are summed in blocks [blockStarts[b], blockStarts[b + 1])
+ * @returns row-major blocks × (steps + 1)
  */
 export function followAcrossFlow(
   { data, offsets }: DelayVectors,
@@ -22,11 +24,13 @@ export function followAcrossFlow(
   second: Int32Array,
   steps: number,
   most: number,
+  blockStarts: Int32Array = Int32Array.of(0, first.length),
 ): DivergenceSums {
   const m = offsets.length;
-  const products = new Float64Array(steps + 1).fill(1);
-  const exponents = new Int32Array(steps + 1);
-  const counts = new Float64Array(steps + 1);
+  const size = (blockStarts.length - 1) * (steps + 1);
+  const products = new Float64Array(size).fill(1);
+  const exponents = new Int32Array(size);
+  const counts = new Float64Array(size);
   const squaredDistance = (i: number, j: number): number => {
     let sum = 0;
     for (let d = 0; d < m; d++) {
@@ -35,7 +39,8 @@ export function followAcrossFlow(
     }
     return sum;
   };
-  for (let p = 0; p < first.length; p++) {
+  for (let p = 0, row = 0; p < first.length; p++) {
+    while (p >= blockStarts[row + 1]!) row++;
     // How far the second orbit is ahead of the first: it keeps to its nearest state.
     let ahead = 0;
     for (let s = 0; s <= steps; s++) {
@@ -59,20 +64,21 @@ export function followAcrossFlow(
       const square = speed > 0 ? distance - (along * along) / speed : distance;
       // Rounding may leave a negative rest; a pair with no difference across the flow says nothing.
       if (!(square > 1e-24 * distance) || square === 0) continue;
-      let product = products[s]! * square;
+      const at = row * (steps + 1) + s;
+      let product = products[at]! * square;
       if (product >= HIGH) {
         product *= LOW;
-        exponents[s]! += 256;
+        exponents[at]! += 256;
       } else if (product < LOW) {
         product *= HIGH;
-        exponents[s]! -= 256;
+        exponents[at]! -= 256;
       }
-      products[s] = product;
-      counts[s]!++;
+      products[at] = product;
+      counts[at]!++;
     }
   }
   return {
-    logSums: products.map((product, s) => 0.5 * (log(product) + exponents[s]! * Math.LN2)),
+    logSums: products.map((product, i) => 0.5 * (log(product) + exponents[i]! * Math.LN2)),
     counts,
   };
 }

@@ -9,8 +9,8 @@ export const BLOCKS = 20;
 const NEIGHBOURS = 10;
 /** Pairs of unrelated states for the ceiling: their mean logarithm is known to 0.03. */
 const UNRELATED = 2_000;
-/** Distances between two yields: a few milliseconds of plain JavaScript. */
-const SLICE = 400_000;
+/** Distances between two yields: some 10 ms of plain JavaScript. The same on every backend, for it orders sums. */
+const SLICE = 1_000_000;
 
 export interface CurveInput {
   /** Vectors that can be followed `steps` samples ahead without leaving their segment. */
@@ -64,15 +64,26 @@ export const divergenceCurveTask = defineTask(
     const index = kernels.neighbourIndex(vectors, 'euclidean');
     try {
       yield 0.05;
-      for (let b = 0; b < BLOCKS; b++) {
-        const end = Math.floor(((b + 1) * references.length) / BLOCKS);
-        for (let from = Math.floor((b * references.length) / BLOCKS); from < end; from += slice) {
-          const part = references.slice(from, Math.min(end, from + slice));
+      const blockOf = (b: number) => Math.floor((b * references.length) / BLOCKS);
+      // Whole blocks where several fit into a slice, parts of one where it does not.
+      const together = Math.max(1, Math.floor(slice / Math.max(1, blockOf(1))));
+      for (let b = 0; b < BLOCKS; b += together) {
+        const end = blockOf(Math.min(BLOCKS, b + together));
+        const most = together > 1 ? end - blockOf(b) : slice;
+        for (let from = blockOf(b); from < end; from += most) {
+          const part = references.slice(from, Math.min(end, from + most));
+          const bounds =
+            together > 1
+              ? Int32Array.from(
+                  { length: Math.min(together, BLOCKS - b) + 1 },
+                  (_, i) => blockOf(b + i) - from,
+                )
+              : Int32Array.of(0, part.length);
           const found = index.nearest(part, NEIGHBOURS, exclusion);
-          add(nearest, b, followNearest(kernels, input, part, found.indices));
+          add(nearest, b, followNearest(kernels, input, part, found.indices, bounds));
           if (plain !== nearest)
-            add(plain, b, followNearest(kernels, { ...input, shift: null }, part, found.indices));
-          add(neighbourhood, b, followNeighbourhood(kernels, input, part, found.indices));
+            add(plain, b, followNearest(kernels, { ...input, shift: null }, part, found.indices, bounds));
+          add(neighbourhood, b, followNeighbourhood(kernels, input, part, found.indices, bounds));
           yield 0.05 + (0.95 * from) / references.length;
         }
       }
@@ -89,7 +100,8 @@ export const divergenceCurveTask = defineTask(
       first.push(i);
       second.push(j);
     }
-    const far = followPairs(kernels, { ...input, steps: 0 }, first, second);
+    const all = Int32Array.of(0, first.length);
+    const far = followPairs(kernels, { ...input, steps: 0 }, first, second, all);
     const groups = Math.floor(first.length / NEIGHBOURS);
     const farTarget = kernels.neighbourhoodDivergence({
       data,
@@ -116,25 +128,36 @@ function emptySums(width: number): DivergenceSums {
   return { logSums: new Float64Array(BLOCKS * width), counts: new Float64Array(BLOCKS * width) };
 }
 
+/** Adds the sums of one block or of several from `block` on. */
 function add(into: DivergenceSums, block: number, sums: DivergenceSums): void {
-  const at = block * sums.logSums.length;
+  const at = (block * into.logSums.length) / BLOCKS;
   for (let s = 0; s < sums.logSums.length; s++) {
     into.logSums[at + s]! += sums.logSums[s]!;
     into.counts[at + s]! += sums.counts[s]!;
   }
 }
 
-function followNearest(kernels: Kernels, input: CurveInput, part: Int32Array, found: Int32Array) {
+function followNearest(
+  kernels: Kernels,
+  input: CurveInput,
+  part: Int32Array,
+  found: Int32Array,
+  bounds: Int32Array,
+) {
   const { starts } = input.vectors;
   const first: number[] = [];
   const second: number[] = [];
-  for (let i = 0; i < part.length; i++) {
-    const j = found[i * NEIGHBOURS]!;
-    if (j < 0) continue;
-    first.push(starts[part[i]!]!);
-    second.push(starts[j]!);
+  const blockStarts = new Int32Array(bounds.length);
+  for (let b = 0; b + 1 < bounds.length; b++) {
+    for (let i = bounds[b]!; i < bounds[b + 1]!; i++) {
+      const j = found[i * NEIGHBOURS]!;
+      if (j < 0) continue;
+      first.push(starts[part[i]!]!);
+      second.push(starts[j]!);
+    }
+    blockStarts[b + 1] = first.length;
   }
-  return followPairs(kernels, input, first, second);
+  return followPairs(kernels, input, first, second, blockStarts);
 }
 
 function followPairs(
@@ -142,9 +165,10 @@ function followPairs(
   { vectors, steps, shift }: CurveInput,
   first: readonly number[],
   second: readonly number[],
+  blockStarts: Int32Array,
 ): DivergenceSums {
   const [a, b] = [Int32Array.from(first), Int32Array.from(second)];
-  if (shift !== null) return followAcrossFlow(vectors, a, b, steps, shift);
+  if (shift !== null) return followAcrossFlow(vectors, a, b, steps, shift, blockStarts);
   return kernels.divergenceSums({
     data: vectors.data,
     first: a,
@@ -152,11 +176,17 @@ function followPairs(
     lengths: new Int32Array(a.length).fill(steps),
     offsets: vectors.offsets,
     steps,
-    blockStarts: Int32Array.of(0, a.length),
+    blockStarts,
   });
 }
 
-function followNeighbourhood(kernels: Kernels, input: CurveInput, part: Int32Array, found: Int32Array) {
+function followNeighbourhood(
+  kernels: Kernels,
+  input: CurveInput,
+  part: Int32Array,
+  found: Int32Array,
+  blockStarts: Int32Array,
+) {
   const { data, starts } = input.vectors;
   const { targetOffset, steps } = input;
   const rowStarts = new Int32Array(part.length + 1);
@@ -175,6 +205,6 @@ function followNeighbourhood(kernels: Kernels, input: CurveInput, part: Int32Arr
     neighbours: Int32Array.from(neighbours),
     lengths: new Int32Array(neighbours.length).fill(steps),
     steps,
-    blockStarts: Int32Array.of(0, part.length),
+    blockStarts,
   });
 }

@@ -9,11 +9,11 @@ import { MeanCurve } from './mean-curve.ts';
 import { noGrowth } from './refusals.ts';
 import { compareSurrogates } from './surrogates.ts';
 import type { DivergenceCurve, DivergenceOptions, DivergenceResult } from './types.ts';
-import { evenReferences, followable } from './vectors.ts';
+import { countFollowable, evenReferences, followable } from './vectors.ts';
 
 const REFERENCES = 4_000;
-/** Distances (references · steps · coordinates) followed at most: a tenth of a second of compiled code. */
-const WORK = 6_000_000;
+/** Distances (references · steps · coordinates) followed at most: some 30 ms of compiled code. */
+const WORK = 3_000_000;
 /** References while the number of steps is being found. */
 const SCOUTS = 300;
 /** Fewest vectors that can be followed, and references: five to a block. */
@@ -84,13 +84,13 @@ async function followLongEnough(
 ): Promise<CurveSums | Refusal> {
   const { dynamics, correlationTime, delay, delaysPerChannel, theilerWindow } = reconstruction;
   const span = (delaysPerChannel - 1) * delay.samples;
-  const all = followable(record, reconstruction, 1, shift).starts.length;
+  const countFor = (steps: number) => countFollowable(record, reconstruction, steps, shift);
+  const all = countFor(1);
   // Beyond, fewer than two thirds of the vectors could be followed.
-  const vectorsFor = (steps: number) => followable(record, reconstruction, steps, shift);
   const allowed = (steps: number) =>
-    steps <= MOST_STEPS && 3 * vectorsFor(steps).starts.length >= Math.max(3 * FEWEST_VECTORS, 2 * all);
+    steps <= MOST_STEPS && 3 * countFor(steps) >= Math.max(3 * FEWEST_VECTORS, 2 * all);
   const follow = (steps: number, most: number) => {
-    const vectors = vectorsFor(steps);
+    const vectors = followable(record, reconstruction, steps, shift);
     return compute.run(divergenceCurveTask, {
       vectors,
       targetOffset: record.target * record.count,
@@ -106,7 +106,7 @@ async function followLongEnough(
   if (!allowed(steps))
     return refusal(
       'TOO_SHORT',
-      `Only ${vectorsFor(steps).starts.length} states can be followed for ${steps} samples within an unbroken stretch; at least ${FEWEST_VECTORS} are needed.`,
+      `Only ${countFor(steps)} states can be followed for ${steps} samples within an unbroken stretch; at least ${FEWEST_VECTORS} are needed.`,
       'Record longer, or without gaps.',
       { count: record.count, steps },
     );

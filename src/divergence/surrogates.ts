@@ -3,6 +3,7 @@ import type { Kernels } from '../base/kernels.ts';
 import { createRandom } from '../base/random.ts';
 import type { Reconstruction } from '../reconstruct/types.ts';
 import { matchedStretch } from '../recording/stretch.ts';
+import { amplitudeAdjustedSurrogate } from '../recording/surrogate.ts';
 import type { PreparedRecord } from '../recording/types.ts';
 import { type CurveInput, type CurveSums, divergenceCurveTask } from './curve.ts';
 import { MeanCurve } from './mean-curve.ts';
@@ -11,7 +12,8 @@ import { evenReferences, followable } from './vectors.ts';
 /** Nine give a standard deviation known to a quarter. */
 const SURROGATES = 9;
 const REFERENCES = 500;
-const LONGEST_STRETCH = 16_384;
+/** Samples at most: neighbours of noise are told from those of a rule well before. */
+const LONGEST_STRETCH = 4_096;
 const ITERATIONS = 40;
 
 export interface SurrogateCurveInput extends CurveInput {
@@ -27,7 +29,7 @@ export const surrogateCurveTask = defineTask(
     if (number === 0) return yield* divergenceCurveTask.run(kernels, input);
     const permutation = createRandom(seed, 42, number).permutation(vectors.data.length);
     yield 0;
-    const data = kernels.surrogate({ values: vectors.data, permutation, iterations: ITERATIONS }).values;
+    const data = yield* amplitudeAdjustedSurrogate(kernels, vectors.data, permutation, ITERATIONS);
     yield 0.2;
     return yield* divergenceCurveTask.run(kernels, { ...input, vectors: { ...vectors, data } });
   },

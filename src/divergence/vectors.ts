@@ -23,10 +23,29 @@ export function followable(
     steps + room,
   );
   const { starts } = all;
+  const inside = new Int32Array(starts.length);
+  let n = 0;
   // A vector `room` samples earlier in the same segment proves that so many samples precede this one.
-  const inside = starts.filter((t, i) => i >= room && starts[i - room] === t - room);
-  const stride = Math.max(1, Math.ceil(inside.length / LIBRARY));
-  return { ...all, starts: stride === 1 ? inside : inside.filter((_, i) => i % stride === 0) };
+  for (let i = room; i < starts.length; i++)
+    if (starts[i - room] === starts[i]! - room) inside[n++] = starts[i]!;
+  const stride = Math.max(1, Math.ceil(n / LIBRARY));
+  const kept = new Int32Array(Math.ceil(n / stride));
+  for (let i = 0; i < kept.length; i++) kept[i] = inside[i * stride]!;
+  return { ...all, starts: kept };
+}
+
+/** How many vectors `followable` would give of a record with no more than its cap. */
+export function countFollowable(
+  record: Pick<PreparedRecord, 'segments'>,
+  reconstruction: Pick<Reconstruction, 'delay' | 'delaysPerChannel'>,
+  steps: number,
+  shift: number | null,
+): number {
+  const back = (reconstruction.delaysPerChannel - 1) * reconstruction.delay.samples;
+  const room = shift === null ? 0 : shift + 1;
+  let n = 0;
+  for (const { start, end } of record.segments) n += Math.max(0, end - start - back - steps - 2 * room);
+  return n;
 }
 
 /** At most `most` ordinals spread evenly over 0 … n − 1. */

@@ -28,8 +28,8 @@ const SAME = 0.1;
 /** A dimension known to less than a third says nothing. */
 const LARGEST_WIDTH = 1 / 3;
 /** Samples and reference points of the surrogate. */
-const TWIN_SAMPLES = 16_384;
-const TWIN_REFERENCES = 800;
+const TWIN_SAMPLES = 8_192;
+const TWIN_REFERENCES = 400;
 
 const METHOD =
   'correlation sum (Grassberger & Procaccia 1983, Physica D 9, 189), Theiler exclusion, block jackknife';

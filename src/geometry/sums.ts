@@ -30,8 +30,12 @@ export interface BlockSums {
 
 /** Every fourth reference point shows whether a wider exclusion changes the slopes: a quarter more work. */
 const WIDE_SHARE = 4;
-/** Distances classed between two yields: a few milliseconds of plain JavaScript. */
-const SLICE = 500_000;
+/**
+ * Distances classed between two yields: a few milliseconds of compiled code or of plain JavaScript. Counts are
+ * whole numbers, so the size of a slice changes no bit.
+ */
+const SLICE = 8_000_000;
+const SLICE_JS = 1_000_000;
 
 /** Correlation sums of one block of reference points (Grassberger & Procaccia 1983, Physica D 9, 189). */
 export const correlationSumsTask = defineTask(
@@ -41,7 +45,8 @@ export const correlationSumsTask = defineTask(
     const some = references.filter((_, i) => i % WIDE_SHARE === 0);
     const rest = references.filter((_, i) => i % WIDE_SHARE !== 0);
     const size = common.dimensions * CORRELATION_EDGES;
-    const slice = Math.max(1, Math.floor(SLICE / (input.valid.length * input.dimensions)));
+    const perSlice = kernels.backend === 'js' ? SLICE_JS : SLICE;
+    const slice = Math.max(1, Math.floor(perSlice / (input.valid.length * input.dimensions)));
     const work = references.length + (wideExclusion > 0 ? some.length : 0);
     let done = 0;
     function* sum(points: Int32Array, exclusion: number): Generator<number, PairCounts, void> {
