@@ -10,8 +10,8 @@ export interface LocalExponentInput {
   readonly dimension: number;
   /** Theiler window in samples. */
   readonly window: number;
-  /** Neighbours of the fits; omitted: chosen by out-of-sample error. */
-  readonly neighbours?: number;
+  /** Steps of each of 20 blocks at most; default 100. */
+  readonly steps?: number;
 }
 
 export interface LocalExponent {
@@ -50,7 +50,7 @@ export const localExponentTask = defineTask(
     const { series, delay, dimension } = input;
     const span = (dimension - 1) * delay;
     const count = series.length - span - delay;
-    const steps = Math.min(MOST_STEPS, Math.floor(count / (delay * BLOCKS)) - TURN_STEPS);
+    const steps = Math.min(input.steps ?? MOST_STEPS, Math.floor(count / (delay * BLOCKS)) - TURN_STEPS);
     const fewer = steps < 5;
     const blocks = fewer ? Math.floor(count / (delay * (TURN_STEPS + 5))) : BLOCKS;
     const length = fewer ? 5 : steps;
@@ -64,7 +64,7 @@ export const localExponentTask = defineTask(
     const index = kernels.neighbourIndex(vectors, 'euclidean');
     try {
       yield 0;
-      const k = input.neighbours ?? (yield* chooseNeighbours(kernels, index, vectors, exclusion, delay));
+      const k = yield* chooseNeighbours(kernels, index, vectors, exclusion, delay);
       const fits = new Fits(kernels, vectors, delay, k);
       const rates: number[] = [];
       let squares = 0;

@@ -34,12 +34,8 @@ export function countOrdinalPatterns(
         ),
       ],
     };
-  let entropy = 0;
-  let missing = 0;
-  for (const count of counts) {
-    if (count === 0) missing++;
-    else entropy -= (count / windows) * log(count / windows);
-  }
+  const missing = counts.reduce((n, count) => (count === 0 ? n + 1 : n), 0);
+  const entropy = permutationEntropy(counts, windows);
   const relative = entropy / log(PATTERNS);
   return {
     missing,
@@ -55,31 +51,44 @@ export function countOrdinalPatterns(
   };
 }
 
-/** Counts of the 24 patterns over all windows with distinct values. */
+/**
+ * Counts of the order! patterns over all windows with distinct values, by Lehmer code: 0 is ascending, the last
+ * is descending.
+ */
 export function ordinalCounts(
   record: Pick<PreparedRecord, 'scaled' | 'count' | 'target' | 'segments'>,
   lag: number,
+  order: number = ORDER,
 ): { readonly counts: Int32Array; readonly windows: number } {
   const x = record.scaled.subarray(record.target * record.count, (record.target + 1) * record.count);
-  const counts = new Int32Array(PATTERNS);
+  let patterns = 1;
+  for (let i = 2; i <= order; i++) patterns *= i;
+  const counts = new Int32Array(patterns);
   let windows = 0;
   for (const { start, end } of record.segments)
-    for (let t = start; t + (ORDER - 1) * lag < end; t++) {
+    for (let t = start; t + (order - 1) * lag < end; t++) {
       let code = 0;
       let ties = false;
       // Lehmer code: for each value, how many later ones are smaller.
-      for (let i = 0; i < ORDER; i++) {
+      for (let i = 0; i < order; i++) {
         let smaller = 0;
-        for (let j = i + 1; j < ORDER; j++) {
+        for (let j = i + 1; j < order; j++) {
           const difference = x[t + j * lag]! - x[t + i * lag]!;
           if (difference < 0) smaller++;
           else if (difference === 0) ties = true;
         }
-        code = code * (ORDER - i) + smaller;
+        code = code * (order - i) + smaller;
       }
       if (ties) continue;
       counts[code]!++;
       windows++;
     }
   return { counts, windows };
+}
+
+/** Permutation entropy in nats: of the shares of the patterns. */
+export function permutationEntropy(counts: Int32Array, windows: number): number {
+  let entropy = 0;
+  for (const count of counts) if (count > 0) entropy -= (count / windows) * log(count / windows);
+  return entropy;
 }
