@@ -34,7 +34,7 @@ export function checkPreconditions(record: PreparedRecord, stationarity: Station
   if (!blocked)
     reasons.push({
       code: 'RECORD_USABLE',
-      text: `The record is long and whole enough for a call. ${stationarity.text}`,
+      text: `No flaw of the record stands in the way of a call. ${stationarity.text}`,
       value: null,
       threshold: null,
       speaksFor: 'none',
