@@ -44,6 +44,7 @@ const CONFIG = {
     titleFontWeight: 'normal',
     orient: 'top',
     symbolStrokeWidth: 2,
+    labelLimit: 400,
   },
 } as const;
 

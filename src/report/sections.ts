@@ -26,7 +26,7 @@ export function answerPlate(assessment: Assessment): Markup {
   const { record, regime, leadTime } = assessment;
   return html`<header><div>
 <h1>${record.name || 'Record'}</h1>
-<p>${count(record.count)} samples, ${quantity(record.interval, record.timeUnit)} apart (${duration(record.count * record.interval, record.timeUnit)})</p>
+<p>${count(record.count)} samples, ${quantity(record.interval, record.timeUnit)} apart: ${duration(record.count * record.interval, record.timeUnit)}</p>
 <p class="lead">${headline(assessment)}</p>
 <dl class="plate">
 <div><dt>Regime</dt><dd>${regime.call}<small>${REGIME_WORDS[regime.call]}; confidence ${percent(regime.confidence)}</small></dd></div>

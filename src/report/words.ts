@@ -28,7 +28,7 @@ export function headline(assessment: Assessment): string {
   const reach = trusted.bound === 'lower' ? 'at least ' : '';
   const value = trusted.bound === 'lower' ? trusted.low : trusted.value;
   return (
-    `A forecast can be trusted for ${reach}${plain(value)} ${record.timeUnit}: so long, ` +
+    `A forecast can be trusted for ${reach}${plain(value)} ${record.timeUnit}: over that time, ` +
     `${plain(leadTime.confidence * 100)} of 100 forecasts stay within ${plain(leadTime.tolerance)} ${record.unit || 'units'} of what comes.`
   );
 }
