@@ -27,8 +27,12 @@ const MOST_LINES = 48;
 /** Half width, in bins, of the main lobe of the window (Hann: 2) and of the surroundings a line is judged in. */
 const LOBE = 3;
 const SURROUNDINGS = 40;
+/** Bins on each side that are next to the lobe. */
+const NEXT_BINS = 8;
 /** The chance that noise raises one of its bins to a line anywhere in the spectrum (Fisher 1929, Proc. R. Soc. A 125, 54). */
 const FALSE_LINE = 1e-3;
+/** Fewer cycles in the record than this cannot show that a line is sharp, and slow noise makes peaks there. */
+const FEWEST_CYCLES = 8;
 /** Weaker lines than this do not matter. */
 const LEAST_SHARE = 1e-6;
 /**
@@ -70,6 +74,7 @@ export const spectralLinesTask = defineTask(
       if (at < 0) break;
       const half = LOBE / bins;
       if (power[at]! < threshold * background(power, at, half)) break;
+      const raised = power[at]! >= threshold * nextLevel(power, at, half);
       const line = refine(residual, window, at / length, 0.5 / n);
       if ((line.amplitude * line.amplitude) / 2 < LEAST_SHARE * variance) break;
       const before = localPower(power, at, half);
@@ -78,6 +83,7 @@ export const spectralLinesTask = defineTask(
       const surroundings = background(power, at, half) * (2 * Math.ceil(half) + 1);
       const skirt = Math.max(0, after - 3 * surroundings) / before;
       if (
+        !raised ||
         skirt > SHARP ||
         found.some((other) => Math.abs(other.frequency - line.frequency) < (2 * LOBE) / n)
       ) {
@@ -140,7 +146,7 @@ function windowedPower(
 /** Bin of the largest power outside the neighbourhoods of broad peaks; −1 when there is none. */
 function strongest(power: Float64Array, broad: readonly Sinusoid[], length: number): number {
   let best = -1;
-  for (let k = LOBE; k < power.length; k++) {
+  for (let k = FEWEST_CYCLES; k < power.length; k++) {
     if (best >= 0 && power[k]! <= power[best]!) continue;
     if (broad.some((line) => Math.abs(k - line.frequency * length) <= SURROUNDINGS)) continue;
     best = k;
@@ -148,13 +154,30 @@ function strongest(power: Float64Array, broad: readonly Sinusoid[], length: numb
   return best >= 0 && power[best]! > 0 ? best : -1;
 }
 
-/** Mean level of the surroundings, from their median (of an exponential distribution: mean · ln 2). */
+/**
+ * Mean level of the surroundings, from the median (of an exponential distribution: mean · ln 2) of the higher
+ * side: on the slope of red noise the lower side makes every bin look like a peak.
+ */
 function background(power: Float64Array, at: number, half: number): number {
+  const sides = [[-1], [1]].map((side) => median(power, at, side, half, SURROUNDINGS));
+  return Math.max(...sides) / Math.LN2;
+}
+
+/** Level of the next bins: on top of a resonance the wider surroundings make every bin look like a peak. */
+function nextLevel(power: Float64Array, at: number, half: number): number {
+  return median(power, at, [-1, 1], half, NEXT_BINS) / Math.LN2;
+}
+
+function median(power: Float64Array, at: number, sides: readonly number[], half: number, width: number) {
+  const reach = Math.ceil(half);
   const around: number[] = [];
-  for (let k = at - SURROUNDINGS; k <= at + SURROUNDINGS; k++)
-    if (k >= 1 && k < power.length && Math.abs(k - at) > half) around.push(power[k]!);
-  around.sort((a, b) => a - b);
-  return around.length > 0 ? around[around.length >> 1]! / Math.LN2 : 0;
+  for (const side of sides)
+    for (let i = reach + 1; i <= reach + width; i++) {
+      const bin = at + side * i;
+      if (bin >= 1 && bin < power.length) around.push(power[bin]!);
+    }
+  // Five bins tell a median; fewer remain at the ends of the spectrum.
+  return around.length >= 5 ? around.sort((a, b) => a - b)[around.length >> 1]! : 0;
 }
 
 function localPower(power: Float64Array, at: number, half: number): number {
