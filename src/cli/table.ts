@@ -19,7 +19,7 @@ const LABEL = 24;
 export function assessmentTable(assessment: Assessment, width: number): string {
   const { record, regime, leadTime, exponents, dimension, noise, reconstruction } = assessment;
   const line = (label: string, text: string) =>
-    `  ${label.padEnd(LABEL)}${wrap(text, Math.max(40, width - LABEL - 2), ' '.repeat(LABEL + 2))}`;
+    `  ${label.padEnd(LABEL)}${wrap(text, Math.max(40, width - LABEL - 2), '').replace(/\n/g, `\n${' '.repeat(LABEL + 2)}`)}`;
   const answer = (label: string, value: Answer) => line(label, answerText(value));
   const lines = [
     record.name || 'Record',
