@@ -5,10 +5,21 @@ import type { Reconstruction } from '../reconstruct/types.ts';
 import { matchedStretch } from '../recording/stretch.ts';
 import type { PreparedRecord } from '../recording/types.ts';
 import { dimensionCurve, OCTAVE, takensEstimate } from './curve.ts';
+import {
+  FEWEST_RETURNS,
+  reasonToDoubt,
+  SAME,
+  slopeOf,
+  tooFewReturns,
+  WIDER,
+  whyNone,
+} from './dimension-refusals.ts';
 import { correlationEntropy } from './entropy.ts';
 import { linearTwinTask } from './linear-twin.ts';
 import { LEVEL, LogSums, STUDENT_90 } from './log-sums.ts';
+import { returnsTask } from './returns.ts';
 import {
+  FEWEST_STEPS,
   findScalingRegion,
   firstEdge,
   halfSlopes,
@@ -16,15 +27,13 @@ import {
   type ScalingSearch,
 } from './scaling.ts';
 import { type SumsSetup, setUpSums, spreadTarget } from './setup.ts';
-import { type BlockSums, sumBlocks } from './sums.ts';
+import { sumBlocks } from './sums.ts';
 import type { DimensionCurve, DimensionOptions, DimensionResult } from './types.ts';
 
 /** ρ = 0.1: a dimension D needs pairs at a tenth of the attractor's size, ρ^D·N²/2 > 1 (Eckmann & Ruelle 1992). */
 export const measurableLimit = (samples: number): number => 2 * log10(samples);
-/** The wider exclusion, in Theiler windows. */
-const WIDER = 4;
-/** A slope that changes by more than this share under a wider exclusion, or is nearer to noise's than this, is refused. */
-const SAME = 0.1;
+/** Edges looked at from the lower end of a region: three octaves. */
+const RETURN_EDGES = 12;
 /** A dimension known to less than a third says nothing. */
 const LARGEST_WIDTH = 1 / 3;
 /** Samples and reference points of the surrogate. */
@@ -57,14 +66,19 @@ export async function estimateDimension(
     setup.smallestExponent,
   );
   const std = record.stds[record.target]!;
-  const search = findScalingRegion(sums, setup.range);
+  const first = findScalingRegion(sums, setup.range);
+  const returns = first.best === null ? NO_RETURNS : await countReturns(setup, sums, first.best, compute);
+  const { lowest } = returns;
+  const search = lowest > 0 ? findScalingRegion(sums, setup.range, FEWEST_STEPS, lowest) : first;
   const region = search.best;
   const answer =
     region === null
-      ? whyNone(sums, setup, search, std, limit)
+      ? first.best === null
+        ? whyNone(sums, setup, search, std, limit)
+        : tooFewReturns(sums, lowest, std)
       : (reasonToDoubt(setup, blocks, region, limit) ??
         (await likeLinearNoise(record, setup, sums, region, options.seed, compute)) ??
-        dimensionFinding(sums, search, region, std));
+        dimensionFinding(sums, search, region, returns.at(region.from), std));
   const accepted = answer.ok ? region : null;
   const curve = dimensionCurve(sums, std, accepted, limit);
   if (!answer.ok) return { correlation: answer, entropy: answer, curve };
@@ -72,16 +86,46 @@ export async function estimateDimension(
   return { correlation: answer, entropy, curve };
 }
 
-/** Mean slope over the dimensions of a region. */
-function slopeOf(sums: LogSums, variant: number, region: ScalingRegion): number {
-  let sum = 0;
-  for (let m = region.firstDimension; m <= region.lastDimension; m++)
-    sum += sums.slope(variant, m, region.from, region.to);
-  return sum / (region.lastDimension - region.firstDimension + 1);
+interface Returns {
+  /** First edge from which pairs are at enough different times apart; 0 when those of the whole region are. */
+  readonly lowest: number;
+  /** Different times of the pairs closer than an edge (at least: those of the last edge counted). */
+  readonly at: (edge: number) => number;
+}
+
+const NO_RETURNS: Returns = { lowest: 0, at: () => 0 };
+
+async function countReturns(
+  setup: SumsSetup,
+  sums: LogSums,
+  region: ScalingRegion,
+  compute: Compute,
+): Promise<Returns> {
+  const { series, valid, delay, exclusion, blocks } = setup;
+  const counts = await compute.run(returnsTask, {
+    series,
+    valid,
+    delay,
+    exclusion,
+    references: Int32Array.from(blocks.flatMap((b) => Array.from(b))),
+    dimension: region.firstDimension,
+    radii: sums.radii.slice(region.from, Math.min(region.to, region.from + RETURN_EDGES) + 1),
+  });
+  const enough = counts.findIndex((n) => n >= FEWEST_RETURNS);
+  return {
+    lowest: enough === 0 ? 0 : region.from + (enough < 0 ? counts.length : enough),
+    at: (edge) => counts[Math.max(0, Math.min(counts.length - 1, edge - region.from))]!,
+  };
 }
 
 /** Sampling error, spread over the regions that would do, and what bend is left, added as squares. */
-function dimensionFinding(sums: LogSums, search: ScalingSearch, region: ScalingRegion, std: number): Answer {
+function dimensionFinding(
+  sums: LogSums,
+  search: ScalingSearch,
+  region: ScalingRegion,
+  returns: number,
+  std: number,
+): Answer {
   const value = region.slope;
   const standardError = sums.standardError((v) => slopeOf(sums, v, region));
   const spread = Math.sqrt(
@@ -103,7 +147,11 @@ function dimensionFinding(sums: LogSums, search: ScalingSearch, region: ScalingR
       sums.slope(0, region.firstDimension, region.from, region.to),
   );
   const sampling = STUDENT_90 * standardError;
-  const width = Math.sqrt(sampling * sampling + STUDENT_90 * STUDENT_90 * spread * spread + bend * bend);
+  // C at the smallest radius is known to 1/√returns, which no choice of blocks shows where all see the same returns.
+  const ofReturns = 1 / Math.sqrt(returns) / (sums.logRadii[region.to]! - sums.logRadii[region.from]!);
+  const width = Math.sqrt(
+    sampling * sampling + STUDENT_90 * STUDENT_90 * spread * spread + bend * bend + ofReturns * ofReturns,
+  );
   if (width > LARGEST_WIDTH * value)
     return refusal(
       'TOO_SHORT',
@@ -126,43 +174,11 @@ function dimensionFinding(sums: LogSums, search: ScalingSearch, region: ScalingR
       spread,
       bend,
       rise,
+      returns,
       takens,
       admissibleRegions: search.admissible.length,
     },
   });
-}
-
-/** Too many dimensions for the record, or a slope that hangs on pairs close in time. */
-function reasonToDoubt(
-  setup: SumsSetup,
-  blocks: readonly BlockSums[],
-  region: ScalingRegion,
-  limit: number,
-): Refusal | null {
-  if (region.slope > limit)
-    return refusal(
-      'HIGH_DIMENSION',
-      `The slope of the correlation sum is ${say(region.slope)}; ${setup.samples} samples cannot show a dimension above ${say(limit)} (Eckmann & Ruelle 1992).`,
-      'The record would have to be longer by orders of magnitude; look at the forecast skill instead.',
-      { slope: region.slope, limit, samples: setup.samples },
-    );
-  const part = (which: (b: BlockSums) => BlockSums['all']) =>
-    new LogSums(blocks.map(which), setup.dimensions, setup.smallestExponent);
-  const plain = part((b) => b.some);
-  const wide = part((b) => b.wide);
-  if (wide.pairs === 0 || wide.count(region.lastDimension, region.from) === 0) return null;
-  const change = slopeOf(wide, 0, region) - slopeOf(plain, 0, region);
-  const tolerance = Math.max(
-    SAME * region.slope,
-    STUDENT_90 * plain.standardError((v) => slopeOf(wide, v, region) - slopeOf(plain, v, region)),
-  );
-  if (Math.abs(change) <= tolerance) return null;
-  return refusal(
-    'NO_SCALING_REGION',
-    `The slope of the correlation sum changes from ${say(slopeOf(plain, 0, region))} to ${say(slopeOf(wide, 0, region))} when pairs less than ${WIDER} decorrelation windows apart are left out, so it comes from closeness in time.`,
-    'Record longer, so that states return many times after they have been forgotten.',
-    { before: slopeOf(plain, 0, region), after: slopeOf(wide, 0, region) },
-  );
 }
 
 /**
@@ -213,54 +229,6 @@ async function likeLinearNoise(
     'A less noisy or longer record may show whether the growth is the sensor’s noise or the motion’s own.',
     { slope: own, surrogate: ofTwin },
   );
-}
-
-/** No region: because of noise, because slopes grow with the embedding, or because none is constant. */
-function whyNone(
-  sums: LogSums,
-  setup: SumsSetup,
-  search: ScalingSearch,
-  std: number,
-  limit: number,
-): Refusal {
-  const short = findScalingRegion(sums, setup.range, 4).best;
-  if (short !== null && short.slope <= limit) {
-    const [low, high] = [sums.radii[short.from]!, sums.radii[short.to]!];
-    return refusal(
-      'NOISE_FLOOR',
-      `Slopes of dimensions ${short.firstDimension} to ${short.lastDimension} agree (${say(short.slope)}) only for distances ${say(low * std)} to ${say(high * std)}, a factor of ${say(high / low)}; 4 is needed. Below, noise or too few pairs hide the structure.`,
-      'Record with less sensor noise or finer resolution, or longer.',
-      { slope: short.slope, low: low * std, high: high * std },
-    );
-  }
-  if (search.flatDimensions >= 3) {
-    const slopes = steepest(sums, setup.range);
-    const last = slopes[slopes.length - 1]!;
-    const code = last.slope > limit ? 'HIGH_DIMENSION' : 'NO_SATURATION';
-    return refusal(
-      code,
-      `The slope of the correlation sum grows with the embedding: ${slopes.map((s) => `${say(s.slope)} in ${s.dimension}`).join(', ')} dimensions. Noise does that, and so does motion of more dimensions than ${setup.samples} samples resolve (about ${say(limit)}).`,
-      'If the record is not noise, it needs to be much longer or less noisy.',
-      { dimension: last.dimension, slope: last.slope, limit },
-    );
-  }
-  return refusal(
-    'NO_SCALING_REGION',
-    `In no range of distances of a factor of 4 is the slope of the correlation sum constant in three successive dimensions (${search.flatDimensions} of ${sums.dimensions} dimensions have a straight range of their own).`,
-    'Record longer or with less noise; a record of few distinct states has no dimension.',
-    { flatDimensions: search.flatDimensions, dimensions: sums.dimensions },
-  );
-}
-
-/** Slope over the lowest factor of 4 with enough pairs, for every other dimension that has one. */
-function steepest(sums: LogSums, range: number) {
-  const out: { dimension: number; slope: number }[] = [];
-  for (let m = 1; m <= sums.dimensions; m++) {
-    const from = firstEdge(sums, m);
-    if (from + 8 < 64 && sums.radii[from + 8]! <= range / 2)
-      out.push({ dimension: m, slope: sums.slope(0, m, from, from + 8) });
-  }
-  return out.length > 4 ? out.filter((_, i) => (out.length - 1 - i) % 2 === 0) : out;
 }
 
 function emptyCurve(limit: number): DimensionCurve {

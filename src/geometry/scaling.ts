@@ -64,17 +64,18 @@ export function findScalingRegion(
   sums: LogSums,
   range: number,
   fewestSteps: number = FEWEST_STEPS,
+  lowest = 0,
 ): ScalingSearch {
   let found: ScalingSearch = { best: null, admissible: [], flatDimensions: 0 };
   for (const share of LARGEST_SHARES) {
-    found = searchUpTo(sums, lastEdge(sums, share * range), fewestSteps);
+    found = searchUpTo(sums, lowest, lastEdge(sums, share * range), fewestSteps);
     if (found.best !== null) break;
   }
   return found;
 }
 
-function searchUpTo(sums: LogSums, last: number, fewestSteps: number): ScalingSearch {
-  const firsts = Array.from({ length: sums.dimensions }, (_, i) => firstEdge(sums, i + 1));
+function searchUpTo(sums: LogSums, lowest: number, last: number, fewestSteps: number): ScalingSearch {
+  const firsts = Array.from({ length: sums.dimensions }, (_, i) => Math.max(lowest, firstEdge(sums, i + 1)));
   const admissible: ScalingRegion[] = [];
   const flat = new Set<number>();
   for (let from = Math.min(...firsts); from + fewestSteps <= last; from++)

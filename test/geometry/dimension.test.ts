@@ -11,6 +11,7 @@ import {
   randomWalk,
   resonance,
   sine,
+  torus,
   white,
 } from './records.ts';
 
@@ -63,6 +64,18 @@ describe('records with one', () => {
     expect(entropy.bound).toBe('upper');
     expect(entropy.high).toBeLessThan(0.01);
     expect(curve!.region!.high / curve!.region!.low).toBeGreaterThanOrEqual(4);
+  });
+
+  it('two tones: 2, or a refusal where they come back too seldom', async () => {
+    let found = 0;
+    for (const seed of [1, 2, 3, 4, 5, 6]) {
+      const { correlation } = await dimensionOf(torus(2000, 17 + 0.37 * seed));
+      if (!correlation.ok) continue;
+      found++;
+      expect(correlation.low).toBeLessThanOrEqual(2);
+      expect(correlation.high).toBeGreaterThanOrEqual(2);
+    }
+    expect(found).toBeGreaterThanOrEqual(3);
   });
 
   it('curves are in the record’s unit and scale with it', async () => {
