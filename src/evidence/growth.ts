@@ -8,10 +8,11 @@ import type { Reconstruction } from '../reconstruct/types.ts';
 import type { PreparedRecord } from '../recording/types.ts';
 import { type EvidenceLine, neutral, short } from './line.ts';
 import { type LocalExponent, type LocalExponentInput, localExponentTask } from './local-exponent.ts';
-import { reordered } from './normal-scores.ts';
+import { normalScores } from './normal-scores.ts';
 import { makeSurrogate, undistorted } from './null-test.ts';
 import { forecastShape } from './regular-motion.ts';
 import { longestStretch, surrogateStretch } from './stretch.ts';
+import { blockMean, isStretching, measureStretching } from './stretching.ts';
 import type { Reason } from './types.ts';
 
 /** Surrogates whose growth is compared; none of 9 reaching the record's is p = 0.1, beside the null test's own level. */
@@ -27,14 +28,8 @@ const LEAST_PER_CYCLE = 0.05;
 const SKILL_LOST = 0.75;
 /** e-folds given to the growth beyond those from the one-step error to the size of the attractor. */
 const SPARE_FOLDS = 2;
-/** Forecasts that start as bad as this have no growth to show. */
-const LARGEST_START = 0.8;
-/** Coordinates at most: fits of more need more neighbours than most records have near. */
-const MOST_COORDINATES = 12;
 /** Steps per block for surrogates: their rates only need to be told from the record's. */
 const SURROGATE_STEPS = 40;
-/** Share of local fits that must support a slope at all. */
-const LEAST_SUPPORT = 0.5;
 
 export interface Growth extends EvidenceLine {
   readonly verdict: 'exponential' | 'none' | 'like-noise' | 'unknown';
@@ -52,10 +47,7 @@ export const surrogateExponentTask = defineTask(
     input: LocalExponentInput & { readonly seed: number; readonly number: number },
   ): Generator<number, LocalExponent | undefined, void> {
     const { seed, number, ...shape } = input;
-    // Surrogates of the undistorted record, seen through the distortion again.
-    const { values, undone } = undistorted(input.series);
-    const surrogate = yield* makeSurrogate(kernels, values, seed, number);
-    const series = undone ? reordered(input.series, surrogate) : surrogate;
+    const series = yield* makeSurrogate(kernels, input.series, seed, number);
     return yield* localExponentTask.run(kernels, { ...shape, series });
   },
 );
@@ -74,21 +66,12 @@ export async function examineGrowth(
   seed: number,
   compute: Compute,
 ): Promise<Growth> {
-  const series = longestStretch(record);
-  // The reconstruction takes the smallest dimension that forecasts about as well as the best; under noise
-  // slopes are steeper, and nearer the truth, with two coordinates more: the better forecast decides.
-  const shapes = [0, 2].map(
-    (more): LocalExponentInput => ({
-      series,
-      delay: reconstruction.delay.samples,
-      dimension: Math.min(MOST_COORDINATES, reconstruction.delaysPerChannel + more),
-      window: reconstruction.theilerWindow.samples,
-    }),
-  );
-  const tried = await compute.map(localExponentTask, shapes);
-  const which = tried[1] !== undefined && !(tried[0]!.error <= tried[1].error) ? 1 : 0;
-  const [local, shape] = [tried[which], shapes[which]!];
-  if (local === undefined)
+  const native = longestStretch(record);
+  // Exponents do not depend on the coordinate, but what bends a linear process bends its fits.
+  const chosen = undistorted(native);
+  const series = chosen.values;
+  const [first] = await measureStretching(series, reconstruction, compute);
+  if (first === undefined)
     return {
       verdict: 'unknown',
       strength: 0,
@@ -100,22 +83,24 @@ export async function examineGrowth(
         ),
       ],
     };
-  const { mean, error } = blockMean(local.blocks);
-  // Student's t: one-sided 99 % with the blocks' degrees of freedom.
-  const low = mean - student99(local.blocks.length - 1) * error;
+  const { mean, low, local, shape } = first;
   const cycle = reconstruction.dynamics === 'map' ? 1 : (record.quality.samplesPerCycle ?? 1);
   const perTime = 1 / record.interval;
-  const grows =
-    low > 0 &&
-    mean * cycle > LEAST_PER_CYCLE &&
-    local.error < LARGEST_START &&
-    local.supported > LEAST_SUPPORT;
+  let grows = isStretching(first) && mean * cycle > LEAST_PER_CYCLE;
+  let bent = false;
+  if (grows) {
+    const other = chosen.undone ? native : normalScores(native);
+    const second = await measureStretching(other, reconstruction, compute);
+    // Bounded distributions have no smooth scores at their ends: there the fits miss by more, and may.
+    bent = !second.some((s) => s.low > 0);
+    grows = !bent;
+  }
   const reasons: Reason[] = [
     {
       code: grows ? 'DIFFERENCES_GROW' : 'DIFFERENCES_DO_NOT_GROW',
       text: grows
-        ? `Locally fitted maps stretch small differences by ${short(mean * perTime)} (at least ${short(low * perTime)}) e-folds per ${record.timeUnit}.`
-        : `Locally fitted maps do not stretch small differences for certain: ${short(mean * perTime)} (at least ${short(low * perTime)}) e-folds per ${record.timeUnit}, from fits of which ${short(100 * local.supported)} % are supported and that miss by ${short(local.error)} standard deviations.`,
+        ? `Locally fitted maps stretch small differences by ${short(mean * perTime)} (at least ${short(low * perTime)}) e-folds per ${record.timeUnit}, as measured and brought to a normal distribution.`
+        : `Locally fitted maps do not stretch small differences for certain${bent ? ' (only in one of two coordinates: as measured, and brought to a normal distribution)' : ''}: ${short(mean * perTime)} (at least ${short(low * perTime)}) e-folds per ${record.timeUnit}, from fits of which ${short(100 * local.supported)} % are supported and that miss by ${short(local.error)} standard deviations.`,
       value: mean * perTime,
       threshold: (LEAST_PER_CYCLE / cycle) * perTime,
       interval: [low * perTime, (2 * mean - low) * perTime],
@@ -133,7 +118,7 @@ export async function examineGrowth(
       speaksFor: divergence.largest.low > 0 ? 'chaotic' : 'none',
     });
   else reasons.push(neutral('NEIGHBOURS_DO_NOT_DIVERGE', divergence.largest.why));
-  const strength = error > 0 ? mean / error : 0;
+  const strength = first.standardError > 0 ? mean / first.standardError : 0;
   const result = (verdict: Growth['verdict']): Growth => ({
     verdict,
     strength,
@@ -147,15 +132,19 @@ export async function examineGrowth(
   const rates = await surrogateRates(record, shape, seed, compute);
   const largest = Math.max(...rates);
   const above = rates.length > 0 && mean > largest;
-  reasons.push({
-    code: above ? 'GROWTH_BEYOND_NOISE' : 'GROWTH_LIKE_NOISE',
-    text: above
-      ? `The same fits on ${rates.length} surrogates of linear noise give at most ${short(largest * perTime)} e-folds per ${record.timeUnit}.`
-      : `Surrogates of linear noise seem to stretch differences as much (${short(largest * perTime)} e-folds per ${record.timeUnit}).`,
-    value: mean * perTime,
-    threshold: rates.length > 0 ? largest * perTime : null,
-    speaksFor: above ? 'chaotic' : 'noise',
-  });
+  reasons.push(
+    rates.length === 0
+      ? neutral('NO_SURROGATES', 'No surrogates could be made to compare the growth with.')
+      : {
+          code: above ? 'GROWTH_BEYOND_NOISE' : 'GROWTH_LIKE_NOISE',
+          text: above
+            ? `The same fits on ${rates.length} surrogates of linear noise give at most ${short(largest * perTime)} e-folds per ${record.timeUnit}.`
+            : `Surrogates of linear noise seem to stretch differences as much (${short(largest * perTime)} e-folds per ${record.timeUnit}).`,
+          value: mean * perTime,
+          threshold: largest * perTime,
+          speaksFor: above ? 'chaotic' : 'noise',
+        },
+  );
   return result(!above ? 'like-noise' : lost.lost ? 'exponential' : 'none');
 }
 
@@ -167,7 +156,7 @@ async function surrogateRates(
 ): Promise<number[]> {
   const found = surrogateStretch(record);
   if (found === null) return [];
-  const series = found.values;
+  const series = undistorted(found.values).values;
   const results = await compute.map(
     surrogateExponentTask,
     Array.from({ length: SURROGATES }, (_, i) => ({
@@ -212,19 +201,4 @@ async function skillLost(
       assumes: 'Forecasts by the mean of the nearest states.',
     },
   };
-}
-
-function blockMean(blocks: readonly number[]): { readonly mean: number; readonly error: number } {
-  const n = blocks.length;
-  const mean = blocks.reduce((s, b) => s + b, 0) / n;
-  const squares = blocks.reduce((s, b) => s + (b - mean) * (b - mean), 0);
-  return { mean, error: Math.sqrt(squares / (n - 1) / n) };
-}
-
-/** One-sided 99 % quantile of Student's t: expansion about the normal's 2.326 (Abramowitz & Stegun 1964, 26.7.5). */
-function student99(freedom: number): number {
-  const z = 2.3263478740408408;
-  const z3 = z * z * z;
-  const z5 = z3 * z * z;
-  return z + (z3 + z) / (4 * freedom) + (5 * z5 + 16 * z3 + 3 * z) / (96 * freedom * freedom);
 }

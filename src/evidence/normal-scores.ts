@@ -19,17 +19,6 @@ export function normalScores(values: Float64Array): Float64Array {
   return out;
 }
 
-/** The values of `like` in the order of the values of `order`: the monotone function put back. */
-export function reordered(like: Float64Array, order: Float64Array): Float64Array {
-  const ranks = Uint32Array.from({ length: order.length }, (_, i) => i).sort(
-    (a, b) => order[a]! - order[b]! || a - b,
-  );
-  const sorted = like.slice().sort();
-  const out = new Float64Array(order.length);
-  for (let r = 0; r < ranks.length; r++) out[ranks[r]!] = sorted[r]!;
-  return out;
-}
-
 /** Coefficients of algorithm AS 241, PPND16 (Wichura 1988, Appl. Stat. 37, 477): relative error about 1e-16. */
 const A = [
   3.387132872796366608, 1.3314166789178437745e2, 1.9715909503065514427e3, 1.3731693765509461125e4,
