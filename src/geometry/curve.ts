@@ -49,7 +49,11 @@ export function dimensionCurve(
   measurableLimit: number,
 ): DimensionCurve {
   const edges = Array.from({ length: CORRELATION_EDGES }, (_, b) => b).filter(
-    (b) => sums.count(1, b) >= FEWEST_PAIRS && (b === 0 || sums.count(1, b - 1) < sums.pairs),
+    (b) =>
+      sums.count(1, b) >= FEWEST_PAIRS &&
+      (b === 0 || sums.count(1, b - 1) < sums.pairs) &&
+      // A record of values near 1e308 has radii beyond what a double holds.
+      Number.isFinite(sums.radii[b]! * std),
   );
   const dimensions = Array.from({ length: sums.dimensions }, (_, i) => i + 1);
   return {
