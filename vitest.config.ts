@@ -26,7 +26,9 @@ export default defineConfig({
     include: ['test/**/*.test.ts'],
     exclude: ['test/panel/full/**', 'node_modules/**'],
     root: fileURLToPath(new URL('.', import.meta.url)),
-    testTimeout: 60_000,
+    // A hang is found; a loaded machine is not a failure.
+    testTimeout: 240_000,
+    hookTimeout: 240_000,
     // Two cores: more processes only make the worker-pool tests wait for each other.
     maxWorkers: 2,
   },

@@ -19,7 +19,7 @@ export interface Evidence {
   readonly divergence: DivergenceResult;
   readonly dimension: DimensionResult;
   readonly count: number;
-  /** The record is long for its slowest movement (its stationarity could be judged). */
+  /** The record holds enough correlation times for a null that stands to mean something. */
   readonly settled: boolean;
 }
 
@@ -117,7 +117,7 @@ export function decide(evidence: Evidence): Decision {
     return inconclusive(
       'TOO_FEW_CYCLES',
       0.7,
-      'Linear noise is not ruled out, but the record is short for its slowest movement: that little could not rule it out. A record several times longer would settle it.',
+      'Linear noise is not ruled out, but the record holds so few correlation times that it hardly could be. A record several times longer would settle it.',
     );
   return {
     call: 'noise',

@@ -24,6 +24,12 @@ export interface RegimeInputs {
   readonly leadTime: LeadTimeResult;
 }
 
+/**
+ * Correlation times from which a null that stands means something: a hundred forecasts that share nothing,
+ * as the statistic itself asks for.
+ */
+const SETTLED = 100;
+
 /** The regime call: every line of evidence, and the rule of `decide.ts` over them. */
 export async function callRegime(
   inputs: RegimeInputs,
@@ -57,7 +63,7 @@ export async function callRegime(
     divergence: inputs.divergence,
     dimension: inputs.dimension,
     count: record.count,
-    settled: inputs.stationarity.verdict === 'stationary',
+    settled: record.count >= SETTLED * reconstruction.correlationTime.samples,
   });
   return {
     call: decision.call,
