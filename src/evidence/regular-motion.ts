@@ -79,7 +79,7 @@ export async function findRegularMotion(
   const lasting = lined ? await measureForgetting(values, reconstruction, compute) : null;
   const all = spectrum.share >= ALL_LINES;
   const holds = all || (lasting !== null && lasting.forgotten <= LASTING + SAMPLING * lasting.near);
-  const { bases } = baseFrequencies(spectrum.lines, values.length);
+  const { bases } = baseFrequencies(spectrum.lines, values.length, 1 - spectrum.share);
   const kind = lined && holds ? (bases.length > 1 ? 'quasiperiodic' : 'periodic') : null;
 
   const reasons: Reason[] = [lineReason(record, spectrum.share, spectrum.lines.length, bases, kind)];

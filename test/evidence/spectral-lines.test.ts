@@ -57,7 +57,10 @@ describe('sharp spectral lines', () => {
 });
 
 describe('base frequencies', () => {
-  const bases = (values: Float64Array) => baseFrequencies(linesOf(values).lines, values.length).bases;
+  const bases = (values: Float64Array) => {
+    const { lines, share } = linesOf(values);
+    return baseFrequencies(lines, values.length, 1 - share).bases;
+  };
 
   it('are one for a limit cycle and for a period of two turns', () => {
     expect(bases(flow(vanDerPolField(3), [2, 0], 0.3)(3000, 1))).toHaveLength(1);
@@ -71,6 +74,11 @@ describe('base frequencies', () => {
     );
     expect(doubled).toHaveLength(1);
     expect(doubled[0]).toBeCloseTo(1 / 120, 5);
+    // Weak harmonics in noise have frequencies with larger errors, which must not count as further bases.
+    for (let seed = 0; seed < 10; seed++) {
+      const noisy = withNoise(flow(vanDerPolField(5), [2, 0], 0.4), 0.05)(1500 + 100 * seed, seed);
+      expect(bases(noisy)).toHaveLength(1);
+    }
   });
 
   it('are two or three for incommensurate tones, also with their sums', () => {
@@ -103,5 +111,14 @@ describe('base frequencies', () => {
         ])(3000, 3),
       ),
     ).toHaveLength(3);
+    // A tone modulated by another: 1/17.3, and with the other added and taken away (once fooled by a folded fit).
+    const slow = 1 / (17.3 * 2 * golden);
+    const modulated = tones([
+      [17.3, 1],
+      [1 / (1 / 17.3 + slow), 0.25],
+      [1 / (1 / 17.3 - slow), 0.25],
+      [17.3 / 2, 0.1],
+    ]);
+    for (const n of [800, 1500, 2500]) expect(bases(modulated(n, 5))).toHaveLength(2);
   });
 });

@@ -96,6 +96,26 @@ export const NOISES: readonly Generator[] = [
   noise('double well', p.doubleWell(0.5, 0.2)),
 ];
 
+/** Narrow-band linear noise through functions that cannot be undone, or hardly: it bends fits into stretching. */
+export const DISTORTED: readonly Generator[] = [
+  noise(
+    'sine of a resonance',
+    p.mapped(p.resonance(0.97, 20), (x) => Math.sin(x / 4)),
+  ),
+  noise(
+    'root of a resonance',
+    p.mapped(p.resonance(0.98, 15), (x) => Math.sign(x) * Math.sqrt(Math.abs(x))),
+  ),
+  noise(
+    'bent resonance',
+    p.mapped(p.resonance(0.97, 20), (x) => x + 0.2 * x * x),
+  ),
+  noise(
+    'levels of a resonance',
+    p.mapped(p.resonance(0.97, 20), (x) => Math.floor(x / 2)),
+  ),
+];
+
 export const NOISY_CYCLES: readonly Generator[] = [
   other('noisy cycle 0.1', p.noisyCycle(0.1, 0.3), ['periodic', 'noise']),
   other('noisy cycle 0.3', p.noisyCycle(0.3, 0.3), ['periodic', 'noise']),
