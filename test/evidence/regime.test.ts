@@ -1,17 +1,9 @@
 import { beforeAll, describe, expect, it } from 'vitest';
 import type { Compute } from '../../src/base/compute.ts';
 import { openKernels } from '../../src/core/open.ts';
-import {
-  CHAOS,
-  DISTORTED,
-  type Generator,
-  NOISES,
-  NOISY_CYCLES,
-  OTHERS,
-  REGULAR,
-} from '../panel/generators.ts';
-import { withNoise } from '../panel/systems.ts';
+import { CHAOS, DISTORTED, NOISES, NOISY_CYCLES, OTHERS, REGULAR } from '../panel/generators.ts';
 import { inlineCompute, regimeOf } from './helpers.ts';
+import { callEach, everySecond, found, wrong } from './panel-calls.ts';
 
 /**
  * A stratified sample of the panel: every second generator once, at a length and seed that change from one to the
@@ -22,31 +14,9 @@ beforeAll(async () => {
   compute = inlineCompute(await openKernels());
 });
 
-const everySecond = <T>(list: readonly T[], first = 0) => list.filter((_, i) => i % 2 === first);
-const LENGTHS = [800, 1500, 2500];
-
-async function calls(generators: readonly Generator[], noise = 0, seed = 500) {
-  const results: { name: string; call: string; right: boolean }[] = [];
-  for (const [i, generator] of generators.entries()) {
-    const values = withNoise(generator.make, noise)(LENGTHS[i % LENGTHS.length]!, seed + i);
-    const regime = await regimeOf(values, 1 + i, compute);
-    const call = regime?.call ?? 'inconclusive';
-    results.push({
-      name: generator.name,
-      call,
-      right: call === 'inconclusive' || generator.right.includes(call),
-    });
-  }
-  return results;
-}
-const wrong = (results: Awaited<ReturnType<typeof calls>>) =>
-  results.filter((r) => !r.right).map((r) => `${r.name}: ${r.call}`);
-const found = (results: Awaited<ReturnType<typeof calls>>) =>
-  results.filter((r) => r.call !== 'inconclusive').length / results.length;
-
 describe('regime call', () => {
   it('never takes noise for anything else', async () => {
-    const results = await calls(everySecond([...NOISES, ...DISTORTED]));
+    const results = await callEach(compute, everySecond([...NOISES, ...DISTORTED]), 500);
     expect(wrong(results)).toEqual([]);
   }, 60_000);
 
@@ -60,9 +30,9 @@ describe('regime call', () => {
       'cubed AR',
       'smoothed',
     ];
-    const results = await calls(
+    const results = await callEach(
+      compute,
       NOISES.filter((g) => plain.includes(g.name)),
-      0,
       600,
     );
     expect(wrong(results)).toEqual([]);
@@ -71,26 +41,13 @@ describe('regime call', () => {
   }, 60_000);
 
   it('never takes a noisy cycle, a drift, a switch or strange but not chaotic motion for chaos', async () => {
-    expect(wrong(await calls(everySecond([...NOISY_CYCLES, ...OTHERS], 0)))).toEqual([]);
+    expect(wrong(await callEach(compute, everySecond([...NOISY_CYCLES, ...OTHERS]), 500))).toEqual([]);
   }, 60_000);
 
   it('tells periodic from quasiperiodic', async () => {
-    const results = await calls(everySecond(REGULAR, 1));
+    const results = await callEach(compute, everySecond(REGULAR, 1), 500);
     expect(wrong(results)).toEqual([]);
     expect(found(results)).toBeGreaterThan(0.6);
-  }, 60_000);
-
-  it('finds chaos, clean and with 5 % noise', async () => {
-    const maps = CHAOS.slice(0, 3);
-    const flows = ['Lorenz', 'Rössler', 'Mackey–Glass 17', 'jerk'].map(
-      (name) => CHAOS.find((g) => g.name === name)!,
-    );
-    for (const noise of [0, 0.05]) {
-      const results = await calls([...maps, ...flows], noise);
-      expect(wrong(results)).toEqual([]);
-      // Every other record here is shorter than the 5,000 samples for which 95 % are asked.
-      expect(found(results)).toBeGreaterThanOrEqual(noise === 0 ? 0.85 : 0.6);
-    }
   }, 60_000);
 });
 
