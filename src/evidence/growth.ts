@@ -29,7 +29,7 @@ const SKILL_LOST = 0.75;
 /** e-folds given to the growth beyond those from the one-step error to the size of the attractor. */
 const SPARE_FOLDS = 2;
 /** Steps per block for surrogates: their rates only need to be told from the record's. */
-const SURROGATE_STEPS = 40;
+const SURROGATE_STEPS = 25;
 
 export interface Growth extends EvidenceLine {
   readonly verdict: 'exponential' | 'none' | 'like-noise' | 'unknown';
