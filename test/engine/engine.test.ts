@@ -53,10 +53,11 @@ describe.each([
     }, 1);
     await engine.assess({ samples, interval: 0.05 });
     clearInterval(timer);
-    // Nine in ten, since a loaded machine takes some slices away; without slices nearly all would be longer.
-    gaps.sort((a, b) => a - b);
-    expect(gaps[Math.floor(0.9 * gaps.length)]).toBeLessThan(ANSWER_MILLISECONDS);
-    expect(gaps.length).toBeGreaterThan(20);
+    // The typical gap, and many of them: a loaded machine takes single slices away, but work in one piece
+    // would leave a handful of gaps, all long.
+    gaps.sort((x, y) => x - y);
+    expect(gaps[gaps.length >> 1]).toBeLessThan(ANSWER_MILLISECONDS);
+    expect(gaps.length).toBeGreaterThan(40);
     await engine.close();
   });
 
